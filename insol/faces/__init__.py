@@ -1,0 +1,1 @@
+"""The faces: surfaces cut to the spacing, grids on the ground, named points."""

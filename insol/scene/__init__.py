@@ -1,0 +1,1 @@
+"""The scene: mesh files read into named parts, in one frame, with what may be wrong with them."""
