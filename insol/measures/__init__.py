@@ -1,0 +1,1 @@
+"""Measures: hours, shaded fraction, spells; arithmetic on stored masks."""

@@ -1,0 +1,1 @@
+"""Output: tables, coloured meshes, pictures, the window, the result folder."""
