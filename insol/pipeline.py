@@ -24,7 +24,7 @@ from insol.scene.model import Scene
 from insol.study.description import Study
 from insol.sun.position import sun_track
 from insol.sun.times import span_of
-from insol.visibility.answering import CHUNK_RECEPTORS, answer_all
+from insol.visibility.answering import answer_all
 from insol.visibility.identity import identity_of
 from insol.visibility.plan import PeriodPlan, distinct, plan_of
 from insol.visibility.receptors import Receptors, receptors_of
@@ -86,7 +86,7 @@ def _run(
     notes = list(scene.doubts)
     store: Store = MemoryStore()
     if target is not None:
-        identity = identity_of(scene, receptors, study.site, caster.engine, CHUNK_RECEPTORS)
+        identity = identity_of(scene, receptors, study.site, caster.engine)
         store, note = result_folder.open_store(target, identity)
         notes += [note] if note else []
     with clock.stage("casting"):
@@ -107,7 +107,7 @@ def _run(
 
 
 def _measured(plan: PeriodPlan, receptors: Receptors, store: Store, face_count: int) -> PeriodResult:
-    hours, spells = hours_of(plan, receptors, store, CHUNK_RECEPTORS)
+    hours, spells = hours_of(plan, receptors, store)
     if spells is not None:
         face = receptors.face[spells.receptor]
         order = np.lexsort((spells.begin, face))

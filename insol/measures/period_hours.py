@@ -7,7 +7,7 @@ import numpy as np
 from insol.measures.by_days import Spells, added, hours_by_day, spans_of
 from insol.measures.by_steps import hours_by_steps
 from insol.measures.sun_hours import SunHours, joined
-from insol.visibility.answering import chunks_of
+from insol.visibility.answering import chunk_size, chunks_of
 from insol.visibility.days import DayQuestion
 from insol.visibility.plan import PeriodPlan
 from insol.visibility.receptors import Receptors
@@ -15,9 +15,7 @@ from insol.visibility.steps import StepsQuestion
 from insol.visibility.store import Store
 
 
-def hours_of(
-    plan: PeriodPlan, receptors: Receptors, store: Store, chunk_receptors: int
-) -> tuple[SunHours, Spells | None]:
+def hours_of(plan: PeriodPlan, receptors: Receptors, store: Store) -> tuple[SunHours, Spells | None]:
     """The hours of every receptor in a period; its spells of sun where the edges are known.
 
     The store holds the answers of the plan's questions for every chunk. Nothing is cast.
@@ -25,7 +23,7 @@ def hours_of(
     measure = _by_days if plan.sampling == "days" else _by_steps
     pieces = [
         (run.start, *measure(plan, receptors.piece(run.start, run.stop), store, number))
-        for number, run in chunks_of(len(receptors), chunk_receptors)
+        for number, run in chunks_of(len(receptors), chunk_size(len(receptors)))
     ]
     hours = joined([hours for _, hours, _ in pieces])
     spells = [(first, found) for first, _, found in pieces if found is not None]

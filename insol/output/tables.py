@@ -21,6 +21,8 @@ if TYPE_CHECKING:
 DECIMALS = {"_m": 4, "_m2": 4, "_deg": 3, "_h": 4, "_fraction": 4, "_share": 4, "minutes": 3}
 """Digits written: a tenth of a millimetre, a third of a second."""
 
+FORMULA_BEGINS = ("=", "+", "-", "@", "\t", "\r")
+
 
 def faces_table(scene: Scene, faces: Faces, hours: Mapping[str, SunHours], north_deg: float) -> pd.DataFrame:
     """One row a face: where it lies, which way it faces, and the hours of each period."""
@@ -110,9 +112,11 @@ def spells_table(
 
 def write_csv(table: pd.DataFrame, path: Path) -> None:
     """Write a table as UTF-8 CSV with a dot for the decimal mark; nothing where there is no value."""
+    import pandas as pd
+
     rounded = table.round({name: digits for name in table.columns if (digits := decimals_of(name)) is not None})
     for name in rounded.columns:
-        if rounded[name].dtype == object or str(rounded[name].dtype) in ("str", "string"):
+        if not pd.api.types.is_numeric_dtype(rounded[name]):
             rounded[name] = _harmless(rounded[name])
     rounded.to_csv(path, index=False, encoding="utf-8", lineterminator="\n")
 
@@ -152,5 +156,5 @@ def _ratio(part: pd.Series, whole: pd.Series) -> pd.Series:
 
 def _harmless(texts: pd.Series) -> pd.Series:
     """Names as they are, but none that a spreadsheet would take for a formula."""
-    risky = texts.str.startswith(("=", "+", "-", "@", "\t", "\r"), na=False)
-    return texts.where(~risky, "'" + texts)
+    risky = {text: f"'{text}" for text in texts.unique() if str(text)[:1] in FORMULA_BEGINS}
+    return texts.replace(risky) if risky else texts

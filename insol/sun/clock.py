@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from datetime import UTC, date, datetime, timedelta, tzinfo
 
 import numpy as np
@@ -106,19 +105,25 @@ def _change_between(zone: tzinfo, first: float, last: float) -> float:
     return last
 
 
-def clock_texts(unix: NDArray[np.float64], clock: Clock, site: Site, track: SunTrack) -> Sequence[str]:
+def clock_texts(unix: NDArray[np.float64], clock: Clock, site: Site, track: SunTrack) -> list[str]:
     """What a clock shows at each instant: "2025-03-21 09:15:00", to the nearest second."""
+    if not len(unix):
+        return []
+    shown = np.round(unix + clock_lead_s(unix, clock, site, track)).astype("datetime64[s]")
+    return [text.replace("T", " ") for text in np.datetime_as_string(shown).tolist()]
+
+
+def clock_lead_s(unix: NDArray[np.float64], clock: Clock, site: Site, track: SunTrack) -> NDArray[np.float64]:
+    """How far a clock is ahead of UTC at each instant (m,) [s]."""
     zone = zone_of(site.time_zone)
-    if clock == "local":
-        return [datetime.fromtimestamp(round(t), tz=zone).strftime("%Y-%m-%d %H:%M:%S") for t in unix]
+    if clock == "solar":
+        return site.longitude / DEG_PER_S + track.equation_of_time_min(unix) * 60.0
     if clock == "standard":
-        if not len(unix):
-            return []
-        offset = standard_offset_s(zone, datetime.fromtimestamp(float(unix[0]), tz=zone).year)
-        shown = unix + offset
-    else:
-        shown = unix + site.longitude / DEG_PER_S + track.equation_of_time_min(unix) * 60.0
-    return [datetime.fromtimestamp(round(t), tz=UTC).strftime("%Y-%m-%d %H:%M:%S") for t in shown]
+        year = datetime.fromtimestamp(float(unix[0]), tz=zone).year
+        return np.full(len(unix), standard_offset_s(zone, year))
+    # Zones change their offset at whole minutes.
+    minutes, number = np.unique(np.floor(unix / 60.0), return_inverse=True)
+    return np.array([offset_s(zone, minute * 60.0) for minute in minutes])[number.reshape(-1)]
 
 
 def solar_time_h(unix: NDArray[np.float64], track: SunTrack) -> NDArray[np.float64]:

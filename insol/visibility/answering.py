@@ -16,8 +16,9 @@ from insol.visibility.asking import CheckStop
 from insol.visibility.receptors import Receptors
 from insol.visibility.store import Store
 
-CHUNK_RECEPTORS = 8192
-"""Receptors of a chunk: casts long enough to hide what Python costs, memory of some tens of MB a thread."""
+LARGEST_CHUNK, SMALLEST_CHUNK, CHUNKS = 8192, 512, 32
+"""Receptors of a chunk: casts long enough to hide what Python costs, memory of some tens of MB a
+thread; and chunks enough to keep every core at work to the end."""
 
 POLL_S = 0.2
 """How often waiting looks up: Ctrl-C is heard within this time."""
@@ -47,6 +48,12 @@ class Tally:
     found: int  # chunks that were stored already
 
 
+def chunk_size(count: int) -> int:
+    """Receptors of a chunk, a multiple of eight: it hangs on their number alone, never on the machine."""
+    even = -(-count // CHUNKS)
+    return min(max(-(-even // 8) * 8, SMALLEST_CHUNK), LARGEST_CHUNK)
+
+
 def chunks_of(count: int, size: int) -> Iterator[tuple[int, slice]]:
     """Number and range of each chunk of `count` receptors."""
     for number, first in enumerate(range(0, count, size)):
@@ -60,7 +67,6 @@ def answer_all(
     store: Store,
     *,
     threads: int | None = None,
-    chunk_receptors: int = CHUNK_RECEPTORS,
     progress: Callable[[float, float], None] | None = None,
 ) -> Tally:
     """Answer every question for every receptor and store the answers.
@@ -75,7 +81,7 @@ def answer_all(
     KeyboardInterrupt
         Passed on within a second; whole chunks stay stored.
     """
-    chunks = list(chunks_of(len(receptors), chunk_receptors))
+    chunks = list(chunks_of(len(receptors), chunk_size(len(receptors))))
     wanted = [(question, number, run) for question in questions for number, run in chunks]
     missing = [item for item in wanted if not store.has(item[0].name, item[1])]
     total = sum(question.rays_per_receptor * (run.stop - run.start) for question, _, run in missing)

@@ -22,7 +22,6 @@ PLAIN_WORDS = {
     "receptors": "the faces that are measured",
     "site": "the site",
     "casting": "the engine",
-    "chunk_receptors": "the size of a chunk",
     "form": "the form of the stored answers",
 }
 
@@ -35,7 +34,6 @@ class Identity:
     receptors: str
     site: str
     casting: str
-    chunk_receptors: int
     form: int = FORM
 
     def differences(self, other: Identity) -> list[str]:
@@ -47,7 +45,7 @@ class Identity:
         ]
 
 
-def identity_of(scene: Scene, receptors: Receptors, site: Site, engine: str, chunk_receptors: int) -> Identity:
+def identity_of(scene: Scene, receptors: Receptors, site: Site, engine: str) -> Identity:
     """The identity of the answers that a run is about to ask for."""
     place = (site.latitude, site.longitude, site.elevation_m, site.north_deg)
     return Identity(
@@ -55,7 +53,6 @@ def identity_of(scene: Scene, receptors: Receptors, site: Site, engine: str, chu
         receptors=fingerprint(receptors.origins, receptors.normals, receptors.orientation),
         site=fingerprint(np.array(place, dtype=np.float64)),
         casting=engine,
-        chunk_receptors=chunk_receptors,
     )
 
 

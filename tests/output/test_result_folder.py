@@ -10,8 +10,8 @@ from insol.errors import ResultError
 from insol.output.result_folder import beside, check_target, finish, only_writer, open_store
 from insol.visibility.identity import Identity
 
-IDENTITY = Identity(geometry="a", receptors="b", site="c", casting="embree", chunk_receptors=8)
-OTHER = Identity(geometry="z", receptors="b", site="c", casting="embree", chunk_receptors=8)
+IDENTITY = Identity(geometry="a", receptors="b", site="c", casting="embree")
+OTHER = Identity(geometry="z", receptors="b", site="c", casting="embree")
 
 
 def a_result(target: Path, identity: Identity, question: str) -> None:

@@ -57,14 +57,14 @@ def test_a_damaged_chunk_is_said_in_one_line(tmp_path: Path) -> None:
 
 
 def test_identity_names_what_changed() -> None:
-    one = Identity(geometry="a", receptors="b", site="c", casting="embree", chunk_receptors=8)
-    other = Identity(geometry="x", receptors="b", site="y", casting="embree", chunk_receptors=8)
+    one = Identity(geometry="a", receptors="b", site="c", casting="embree")
+    other = Identity(geometry="x", receptors="b", site="y", casting="embree")
     assert one.differences(other) == ["the models' geometry", "the site"]
     assert one.differences(one) == []
 
 
 def test_identity_is_read_back_or_none(tmp_path: Path) -> None:
-    one = Identity(geometry="a", receptors="b", site="c", casting="embree", chunk_receptors=8)
+    one = Identity(geometry="a", receptors="b", site="c", casting="embree")
     assert read_identity(tmp_path) is None
     write_json_aside(tmp_path / "identity.json", {**one.__dict__})
     assert read_identity(tmp_path) == one
