@@ -10,10 +10,12 @@ Units = Literal["mm", "cm", "m", "in", "ft"]
 Up = Literal["z", "y"]
 Role = Literal["surroundings", "existing", "proposed", "ground"]
 Clock = Literal["local", "standard", "solar"]
+Sampling = Literal["auto", "days", "rows", "steps"]
 
 UNITS: tuple[Units, ...] = ("mm", "cm", "m", "in", "ft")
 UPS: tuple[Up, ...] = ("z", "y")
 ROLES: tuple[Role, ...] = ("surroundings", "existing", "proposed", "ground")
+SAMPLINGS: tuple[Sampling, ...] = ("auto", "days", "rows", "steps")
 CLOCKS: tuple[Clock, ...] = ("local", "standard", "solar")
 
 
@@ -83,8 +85,9 @@ class Period:
     start: str | None = None  # "09:00" (the key `from`)
     end: str | None = None  # "15:00" (the key `to`)
     clock: Clock = "local"
-    step_min: int = 10
+    step_min: int = 5
     lowest_altitude_deg: float = 0.0  # the sun counts from this altitude up [deg]
+    sampling: Sampling = "auto"  # how the sky is asked: see DEVELOPERS.md
 
 
 @dataclass(frozen=True, kw_only=True)
