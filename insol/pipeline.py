@@ -4,14 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
+from dataclasses import dataclass
 from pathlib import Path
 from time import perf_counter
-from typing import Literal
 
 import numpy as np
 
-from insol.casting.engines import build
+from insol.casting.contract import Caster
+from insol.casting.engines import EngineChoice, build
 from insol.conventions import STAND_OFF_M
+from insol.errors import PeriodError
 from insol.faces.make import make_faces
 from insol.faces.model import Faces
 from insol.measures.by_days import Spells
@@ -19,10 +21,12 @@ from insol.measures.period_hours import hours_of
 from insol.measures.sun_hours import on_faces
 from insol.output import result_folder
 from insol.output.results import PeriodResult, Results
-from insol.scene.assemble import load_scene
+from insol.scene.assemble import load_scene_and_health
+from insol.scene.health import PartHealth
 from insol.scene.model import Scene
-from insol.study.description import Study
-from insol.sun.position import sun_track
+from insol.study.description import Period, Study
+from insol.study.writing import check_study
+from insol.sun.position import SunTrack, sun_track
 from insol.sun.times import span_of
 from insol.visibility.answering import answer_all
 from insol.visibility.identity import identity_of
@@ -30,9 +34,22 @@ from insol.visibility.plan import PeriodPlan, distinct, plan_of
 from insol.visibility.receptors import Receptors, receptors_of
 from insol.visibility.store import MemoryStore, Store
 
-EngineChoice = Literal["auto", "embree", "numpy"]
 Progress = Callable[[str, float, float], None]
 """Told the stage, how much of it is done, and how much it is."""
+
+
+@dataclass(frozen=True)
+class Prepared:
+    """Everything that a run knows before it asks the sky."""
+
+    study: Study
+    scene: Scene
+    health: tuple[PartHealth, ...]  # of each part of the scene
+    caster: Caster
+    faces: Faces
+    receptors: Receptors
+    track: SunTrack
+    plans: tuple[PeriodPlan, ...]
 
 
 def run(
@@ -55,68 +72,82 @@ def run(
     Raises
     ------
     InputError
-        The study, a model or the folder cannot be used; nothing was written.
+        The study, a model or the folder cannot be used; an earlier result is untouched.
     """
+    clock = StageClock(progress)
     if out is None:
-        return _run(study, None, engine, threads, repair, progress)
+        return _answered(prepare(study, engine=engine, repair=repair, clock=clock), MemoryStore(), threads, clock, ())
     target = Path(out).absolute()
     result_folder.check_target(target)
+    prepared = prepare(study, engine=engine, repair=repair, clock=clock)
     with result_folder.only_writer(target):
-        return _run(study, target, engine, threads, repair, progress)
+        return _into_folder(prepared, target, threads, clock)
 
 
-def _run(
-    study: Study,
-    target: Path | None,
-    engine: EngineChoice,
-    threads: int | None,
-    repair: bool,
-    progress: Progress | None,
-) -> Results:
-    clock = StageClock(progress)
+def prepare(
+    study: Study, *, engine: EngineChoice = "auto", repair: bool = False, clock: StageClock | None = None
+) -> Prepared:
+    """Read the models, follow the sun, cut the faces: all of a run but its rays."""
+    clock = clock or StageClock(None)
+    study = study if study.file is not None else check_study(study)
     with clock.stage("reading"):
-        scene = load_scene(study, repair=repair)
+        scene, health = load_scene_and_health(study, repair=repair)
     with clock.stage("sun"):
         track = sun_track(study.site, *span_of(study.periods, study.site))
-        plans = [plan_of(period, study.site, track) for period in study.periods]
+        plans = tuple(_plan(period, study, track) for period in study.periods)
     with clock.stage("faces"):
         caster = build(scene.vertices, scene.triangles, engine)
         faces = make_faces(scene, study, caster)
-        receptors = receptors_of(faces, extent_m=_extent(scene, faces), stand_off_m=STAND_OFF_M)
-    notes = list(scene.doubts)
-    store: Store = MemoryStore()
-    if target is not None:
-        identity = identity_of(scene, receptors, study.site, caster.engine)
-        store, note = result_folder.open_store(target, identity)
-        notes += [note] if note else []
-    with clock.stage("casting"):
-        tally = answer_all(distinct(plans), caster, receptors, store, threads=threads, progress=clock.within)
-    with clock.stage("measuring"):
-        periods = tuple(_measured(plan, receptors, store, len(faces)) for plan in plans)
-    results = Results(
-        study=study, scene=scene, faces=faces, track=track, periods=periods, engine=caster.engine,
-        warnings=tuple(notes), tally=tally, seconds=clock.seconds,
-    )  # fmt: skip
-    if target is not None:
-        from insol.output.writing import write_results
+        extent = max(scene.extent_m, float(np.abs(faces.points).max(initial=0.0)))
+        receptors = receptors_of(faces, extent_m=extent, stand_off_m=STAND_OFF_M)
+    return Prepared(study, scene, health, caster, faces, receptors, track, plans)
 
-        with clock.stage("writing"):
-            write_results(results, result_folder.beside(target, ".unfinished"))
-            result_folder.finish(target)
+
+def _plan(period: Period, study: Study, track: SunTrack) -> PeriodPlan:
+    try:
+        return plan_of(period, study.site, track)
+    except PeriodError as refused:
+        file = f"{study.file.name}: " if study.file is not None else ""
+        raise PeriodError(refused.what, where=f'{file}period "{period.name}"', hint=refused.hint) from None
+
+
+def _into_folder(prepared: Prepared, target: Path, threads: int | None, clock: StageClock) -> Results:
+    """Answers stored beside the target, which the whole result replaces at the end."""
+    identity = identity_of(prepared.scene, prepared.receptors, prepared.study.site, prepared.caster.engine)
+    store, note = result_folder.open_store(target, identity)
+    results = _answered(prepared, store, threads, clock, (note,) if note else ())
+    from insol.output.writing import write_results
+
+    with clock.stage("writing"):
+        write_results(results, result_folder.beside(target, ".unfinished"))
+        result_folder.finish(target)
     return results
 
 
-def _measured(plan: PeriodPlan, receptors: Receptors, store: Store, face_count: int) -> PeriodResult:
-    hours, spells = hours_of(plan, receptors, store)
+def _answered(
+    prepared: Prepared, store: Store, threads: int | None, clock: StageClock, notes: tuple[str, ...]
+) -> Results:
+    """Ask what is not stored, and derive every period's hours."""
+    receptors, plans = prepared.receptors, prepared.plans
+    with clock.stage("casting"):
+        tally = answer_all(
+            distinct(plans), prepared.caster, receptors, store, threads=threads, progress=clock.within
+        )
+    with clock.stage("measuring"):
+        periods = tuple(_measured(plan, prepared, store) for plan in plans)
+    return Results(
+        study=prepared.study, scene=prepared.scene, faces=prepared.faces, track=prepared.track, periods=periods,
+        engine=prepared.caster.engine, warnings=(*prepared.scene.doubts, *notes), tally=tally, seconds=clock.seconds,
+    )  # fmt: skip
+
+
+def _measured(plan: PeriodPlan, prepared: Prepared, store: Store) -> PeriodResult:
+    hours, spells = hours_of(plan, prepared.receptors, store, prepared.track)
     if spells is not None:
-        face = receptors.face[spells.receptor]
+        face = prepared.receptors.face[spells.receptor]
         order = np.lexsort((spells.begin, face))
         spells = Spells(face[order], spells.begin[order], spells.end[order])
-    return PeriodResult(plan, on_faces(hours, receptors.face, face_count), spells)
-
-
-def _extent(scene: Scene, faces: Faces) -> float:
-    return max(scene.extent_m, float(np.abs(faces.points).max(initial=0.0)))
+    return PeriodResult(plan, on_faces(hours, prepared.receptors.face, len(prepared.faces)), spells)
 
 
 class StageClock:

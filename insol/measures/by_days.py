@@ -11,8 +11,9 @@ from insol.checks import read_only
 from insol.conventions import EDGE_SECONDS
 from insol.measures.sun_hours import SunHours
 from insol.sun.times import Intervals
-from insol.visibility.days import DayQuestion, front_windows
+from insol.visibility.days import DayQuestion
 from insol.visibility.receptors import Receptors
+from insol.visibility.tracing import front_windows
 
 
 @dataclass(frozen=True)
@@ -67,10 +68,10 @@ def hours_by_day(
     Notes
     -----
     Each edge is known to EDGE_SECONDS. What can be missed is a spell, of sun or of shade, that fell
-    whole between two samples: half a step is allowed for it, and one step more for each spell seen
-    that is shorter than two steps, since where some are that short others may be shorter.
+    whole between two samples: a step is allowed for it, and one step more for each spell seen that
+    is shorter than two steps, since where some are that short others may be shorter.
     """
-    windows = front_windows(receptors.normals, question.track, question.rise, question.set, question.samples())
+    windows = front_windows(receptors.normals, question, question.samples())
     possible = np.zeros(len(receptors.normals))
     for begin, end in spans:
         inside = np.minimum(windows.end, end) - np.maximum(windows.begin, begin)
@@ -79,7 +80,7 @@ def hours_by_day(
     count = len(receptors)
     direct = np.bincount(cut.receptor, cut.end - cut.begin, minlength=count)
     edges = 2.0 * np.bincount(spells.receptor, minlength=count)
-    hidden = question.step_s * (0.5 + _short_spells(spells, count, 2 * question.step_s))
+    hidden = question.step_s * (1.0 + _short_spells(spells, count, 2 * question.step_s))
     error = np.where(possible[receptors.orientation] > 0, edges * EDGE_SECONDS + hidden, 0.0)
     hours = SunHours(direct / 3600, possible[receptors.orientation] / 3600, error / 3600)
     return hours, cut

@@ -57,11 +57,11 @@ def edge_error(edges: NDArray[np.float64], step_s: float) -> NDArray[np.float64]
     """Error [s] of a sum over edges that were counted by time of day: (slots, n) -> (n,).
 
     Half a step for every edge is the most that can be; a spell that fell whole between two samples
-    is allowed for by half a step more.
+    is allowed for by a step more.
     """
     most = edges.sum(axis=0)
     likely = SPREAD * np.sqrt((edges**2).sum(axis=0))
-    return step_s / 2 * (np.minimum(most, likely) + 1.0)
+    return step_s / 2 * (np.minimum(most, likely) + 2.0)
 
 
 def _slots(intervals: Intervals) -> tuple[NDArray[np.int64], float]:

@@ -6,44 +6,66 @@ import numpy as np
 
 from insol.measures.by_days import Spells, added, hours_by_day, spans_of
 from insol.measures.by_steps import hours_by_steps
+from insol.measures.by_year import YearWeights, hours_by_year
 from insol.measures.sun_hours import SunHours, joined
+from insol.sun.position import SunTrack
 from insol.visibility.answering import chunk_size, chunks_of
 from insol.visibility.days import DayQuestion
 from insol.visibility.plan import PeriodPlan
 from insol.visibility.receptors import Receptors
 from insol.visibility.steps import StepsQuestion
 from insol.visibility.store import Store
+from insol.visibility.year import YearQuestion
+
+Chunk = tuple[int, int, Receptors]
+"""Number, first receptor, receptors."""
 
 
-def hours_of(plan: PeriodPlan, receptors: Receptors, store: Store) -> tuple[SunHours, Spells | None]:
+def hours_of(
+    plan: PeriodPlan, receptors: Receptors, store: Store, track: SunTrack
+) -> tuple[SunHours, Spells | None]:
     """The hours of every receptor in a period; its spells of sun where the edges are known.
 
     The store holds the answers of the plan's questions for every chunk. Nothing is cast.
     """
-    measure = _by_days if plan.sampling == "days" else _by_steps
-    pieces = [
-        (run.start, *measure(plan, receptors.piece(run.start, run.stop), store, number))
+    chunks = [
+        (number, run.start, receptors.piece(run.start, run.stop))
         for number, run in chunks_of(len(receptors), chunk_size(len(receptors)))
     ]
-    hours = joined([hours for _, hours, _ in pieces])
-    spells = [(first, found) for first, _, found in pieces if found is not None]
-    if plan.sampling != "days":
-        return hours, None
-    return hours, Spells(
-        receptor=np.concatenate([found.receptor + first for first, found in spells]),
-        begin=np.concatenate([found.begin for _, found in spells]),
-        end=np.concatenate([found.end for _, found in spells]),
-    )
+    if plan.sampling == "days":
+        return _by_days(plan, chunks, store)
+    if plan.sampling == "rows":
+        return _by_rows(plan, chunks, store, track), None
+    return _by_steps(plan, chunks, store), None
 
 
-def _by_steps(plan: PeriodPlan, receptors: Receptors, store: Store, chunk: int) -> tuple[SunHours, None]:
+def _by_rows(plan: PeriodPlan, chunks: list[Chunk], store: Store, track: SunTrack) -> SunHours:
+    (question,) = plan.questions
+    assert isinstance(question, YearQuestion)
+    weights = YearWeights(question, plan.intervals, track)
+    return joined([hours_by_year(weights, piece, store.read(question.name, number)) for number, _, piece in chunks])
+
+
+def _by_steps(plan: PeriodPlan, chunks: list[Chunk], store: Store) -> SunHours:
     (question,) = plan.questions
     assert isinstance(question, StepsQuestion)
-    packed = store.read(question.name, chunk)["open"]
-    return hours_by_steps(question, plan.intervals, receptors, packed), None
+    return joined([
+        hours_by_steps(question, plan.intervals, piece, store.read(question.name, number)["open"])
+        for number, _, piece in chunks
+    ])  # fmt: skip
 
 
-def _by_days(plan: PeriodPlan, receptors: Receptors, store: Store, chunk: int) -> tuple[SunHours, Spells]:
+def _by_days(plan: PeriodPlan, chunks: list[Chunk], store: Store) -> tuple[SunHours, Spells]:
+    pieces = [(first, *_days_of_chunk(plan, piece, store, number)) for number, first, piece in chunks]
+    spells = Spells(
+        receptor=np.concatenate([found.receptor + first for first, _, found in pieces]),
+        begin=np.concatenate([found.begin for _, _, found in pieces]),
+        end=np.concatenate([found.end for _, _, found in pieces]),
+    )
+    return joined([hours for _, hours, _ in pieces]), spells
+
+
+def _days_of_chunk(plan: PeriodPlan, receptors: Receptors, store: Store, chunk: int) -> tuple[SunHours, Spells]:
     spans = spans_of(plan.intervals)
     hours, spells = [], []
     for question in plan.questions:

@@ -38,7 +38,7 @@ def write_ply(
     comments: tuple[str, ...] = (),
 ) -> None:
     """Write triangles (t, 3, 3) with a colour (t, 3) and values (t,) each."""
-    names = {name: _property_name(name) for name in (*scalars, *ints)}
+    names = _property_names([*scalars, *ints])
     colour = [(channel, "u1") for channel in ("red", "green", "blue")]
     values = [(names[name], "<f4") for name in scalars]
     numbers = [(names[name], "<i4") for name in ints]
@@ -117,9 +117,16 @@ def _read_header(head: str) -> tuple[dict[str, int], dict[str, np.dtype]]:
     return counts, {element: np.dtype(columns) for element, columns in fields.items()}
 
 
-def _property_name(name: str) -> str:
-    """A name that stays one word in the header."""
-    return re.sub(r"[^A-Za-z0-9_]", "_", name) or "value"
+def _property_names(names: list[str]) -> dict[str, str]:
+    """Names that stay one word of plain letters in the header, each different from the others."""
+    taken: dict[str, str] = {}
+    for name in names:
+        word = re.sub(r"[^A-Za-z0-9_]", "_", name) or "value"
+        number = 2
+        while word in taken.values():
+            word, number = f"{re.sub(r'[^A-Za-z0-9_]', '_', name)}_{number}", number + 1
+        taken[name] = word
+    return taken
 
 
 def _plain(text: str) -> str:

@@ -24,8 +24,8 @@ class PartHealth:
     area_m2: float
     low_m: tuple[float, float, float]  # corner of the bounding box, model frame
     high_m: tuple[float, float, float]
-    open_edges: int  # sides without a neighbour
-    crowded_edges: int  # shared by more than two sides
+    open_edges: int  # sides without a neighbour in the part's whole model
+    crowded_edges: int  # shared by more than two sides of the part itself
     doubles: int  # triangles on the same three vertices as another
     flipped: int  # triangles turned over on reading
     sheets: int  # triangles measured on both sides
@@ -54,9 +54,12 @@ def health_of(
     """The health of each part; `vertices` (v, 3) in metres in the model frame."""
     count = len(names)
     apart = triangles.astype(np.int64) + part[:, None].astype(np.int64) * len(vertices)
-    edges = edges_of(np.unique(apart, return_inverse=True)[1].reshape(-1, 3))
-    first_side = np.unique(edges.edge.ravel(), return_index=True)[1]
-    part_of_edge = part[first_side // 3]
+    alone = edges_of(np.unique(apart, return_inverse=True)[1].reshape(-1, 3))
+    # A facade that is a part of its own is closed by the other parts of its block.
+    together = edges_of(triangles)
+    part_of_alone, part_of_edge = (
+        part[np.unique(edges.edge.ravel(), return_index=True)[1] // 3] for edges in (alone, together)
+    )
     _, areas = normals_and_areas(vertices[triangles])
     low, high = np.full((count, 3), np.inf), np.full((count, 3), -np.inf)
     for corner in range(3):
@@ -69,8 +72,8 @@ def health_of(
     rows = (
         np.bincount(part, minlength=count),
         np.bincount(part, areas, minlength=count),
-        counted(part_of_edge, edges.uses == 1),
-        counted(part_of_edge, edges.uses > 2),
+        counted(part_of_edge, together.uses == 1),
+        counted(part_of_alone, alone.uses > 2),
         counted(part, _is_double(apart)),
         counted(part, flipped),
         counted(part, sheet),

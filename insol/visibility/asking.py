@@ -67,3 +67,24 @@ def _open_sky_gathered(
         check_stop()
         facing = chosen[front[orientation, column]]
         answers[column, facing] = ~caster.blocked(receptors.origins[facing], directions[column])
+
+
+def open_where(
+    caster: Caster,
+    receptors: Receptors,
+    directions: NDArray[np.float64],
+    asked: NDArray[np.bool_],
+    taken: NDArray[np.bool_],
+    check_stop: CheckStop,
+) -> NDArray[np.bool_]:
+    """The same, cast only where `asked` (m, n); elsewhere the answer is what is `taken` (m, n) for it.
+
+    What is behind a face is not cast, asked or not.
+    """
+    front = in_front(receptors.normals, directions)
+    answers = taken.copy()
+    for column, direction in enumerate(directions):
+        check_stop()
+        facing = np.flatnonzero(asked[column] & front[receptors.orientation, column])
+        answers[column, facing] = ~caster.blocked(receptors.origins[facing], direction)
+    return answers

@@ -16,11 +16,12 @@ from insol.sun.times import Intervals, intervals_of
 from insol.visibility.answering import Question
 from insol.visibility.days import DayQuestion
 from insol.visibility.steps import StepsQuestion
+from insol.visibility.year import YearQuestion
 
-Sampling = Literal["days", "steps"]
+Sampling = Literal["days", "steps", "rows"]
 
 SHORT_DAYS = 7
-"""Up to so many days are asked day by day, with every edge refined."""
+"""Up to so many days are asked day by day, with every edge refined; more of them along the year's rows."""
 
 
 @dataclass(frozen=True)
@@ -30,8 +31,8 @@ class PeriodPlan:
     Attributes
     ----------
     intervals : the period's own, cut by its window and low-sun limit
-    sampling : "days", edges refined to a second; "steps", the middle of every interval
-    questions : for days one a day, for steps one
+    sampling : "days", every edge refined to a second; "rows", the year's; "steps", the middle of every interval
+    questions : one for each day, or one for all
     """
 
     period: Period
@@ -46,7 +47,7 @@ class PeriodPlan:
 
 
 def plan_of(period: Period, site: Site, track: SunTrack) -> PeriodPlan:
-    """Choose the way to answer a period.
+    """Choose the way to answer a period, unless it names one.
 
     Raises
     ------
@@ -54,10 +55,16 @@ def plan_of(period: Period, site: Site, track: SunTrack) -> PeriodPlan:
         The sun is not up in it.
     """
     intervals = intervals_of(period, site, track)
-    if len(intervals.resolved_days) <= SHORT_DAYS:
-        days = day_questions(period, site, track)
-        return PeriodPlan(period, intervals, "days", tuple(days))
-    return PeriodPlan(period, intervals, "steps", (StepsQuestion(intervals.middle, track),))
+    short = len(intervals.resolved_days) <= SHORT_DAYS
+    sampling = ("days" if short else "rows") if period.sampling == "auto" else period.sampling
+    questions: list[Question]
+    if sampling == "days":
+        questions = list(day_questions(period, site, track))
+    elif sampling == "rows":
+        questions = [YearQuestion(site.latitude, site.north_deg)]
+    else:
+        questions = [StepsQuestion(intervals.middle, track)]
+    return PeriodPlan(period, intervals, sampling, tuple(questions))
 
 
 def distinct(plans: Sequence[PeriodPlan]) -> list[Question]:

@@ -46,11 +46,15 @@ class Receptors:
 
     def piece(self, first: int, last: int) -> Receptors:
         """The receptors from `first` up to `last`, with the orientations that occur among them."""
-        present, orientation = np.unique(self.orientation[first:last], return_inverse=True)
+        return self.chosen(np.arange(first, last))
+
+    def chosen(self, which: NDArray[np.int64]) -> Receptors:
+        """The receptors at ascending places, with the orientations that occur among them."""
+        present, orientation = np.unique(self.orientation[which], return_inverse=True)
         return Receptors(
-            face=self.face[first:last],
-            origins=self.origins[first:last],
-            orientation=orientation.astype(np.int32),
+            face=self.face[which],
+            origins=self.origins[which],
+            orientation=orientation.reshape(-1).astype(np.int32),
             normals=self.normals[present],
         )
 
