@@ -11,7 +11,7 @@ from insol.conventions import GRAZING
 from insol.measures.sun_hours import SunHours
 from insol.sun.position import SunTrack, direction_from
 from insol.sun.times import Intervals
-from insol.visibility.lattice import HALF_TURN_S, SECONDS_PER_DEGREE
+from insol.visibility.lattice import HALF_TURN_S, PLACE_S, SECONDS_PER_DEGREE
 from insol.visibility.receptors import Receptors
 from insol.visibility.year import YearQuestion
 
@@ -23,11 +23,16 @@ CELL_S = 60.0
 
 CELLS = int(2 * HALF_TURN_S / CELL_S)
 
+PLACES_A_CELL = int(CELL_S / PLACE_S)
+
 MOST_KEPT = 64
 """Orientations whose weights are kept at a time: half a megabyte each."""
 
-HIDDEN, BENT, UNSEEN = 1.4, 0.1, 0.0005
-"""Weights of the three causes of error: the first two of their own estimates, the last of the possible sun."""
+PER_SPELL, HIDDEN, BENT = 0.45, 0.5, 0.1
+"""Weights of the three causes of error: of a step for each spell, and of their own estimates for the others."""
+
+FEWEST_SPELLS = 4
+"""A face that no sun was found on may still have had some: its error is that of so many spells."""
 
 SHORTEST_S = 30.0
 """Shorter spells count as of this length: the estimate would run away."""
@@ -74,17 +79,20 @@ class YearWeights:
         self.question = question
         self.declinations = np.array([row.declination for row in question.rows()])
         self.minutes = minutes_of(intervals, track, self.declinations)
+        self.days = self._days_of_rows()
         self._rows_directions = [self._directions_on(self.minutes.row + above) for above in (0, 1)]
         self._kept: dict[bytes, NDArray[np.float64]] = {}
 
     def of(self, normal: NDArray[np.float64]) -> NDArray[np.float64]:
         """Seconds summed up to the begin of each cell (rows, CELLS + 1), for a face that looks along `normal`."""
         key = normal.tobytes()
-        if key not in self._kept:
+        kept = self._kept.get(key)
+        if kept is None:  # two threads may both find it missing, and both find the same
+            kept = self._weights(normal)
             if len(self._kept) >= MOST_KEPT:
                 self._kept.clear()
-            self._kept[key] = self._weights(normal)
-        return self._kept[key]
+            self._kept[key] = kept
+        return kept
 
     def _weights(self, normal: NDArray[np.float64]) -> NDArray[np.float64]:
         front = np.flatnonzero(self.minutes.direction @ normal > GRAZING)
@@ -103,6 +111,14 @@ class YearWeights:
         np.cumsum(weights.reshape(rows, CELLS), axis=1, out=summed[:, 1:])
         return summed
 
+    def _days_of_rows(self) -> NDArray[np.float64]:
+        """How many days of the period each row (rows,) stands for."""
+        minutes, rows = self.minutes, self.question.rows()
+        row = np.concatenate([minutes.row, minutes.row + 1])
+        seconds = np.concatenate([minutes.seconds * (1 - minutes.share), minutes.seconds * minutes.share])
+        up = np.array([max(row.set - row.rise, CELL_S) for row in rows])
+        return np.bincount(row, seconds, minlength=len(rows)) / up
+
     def _directions_on(self, row: NDArray[np.int64]) -> NDArray[np.float64]:
         return direction_from(
             self.declinations[row], self.minutes.hour_angle, self.question.latitude, self.question.north_deg
@@ -114,83 +130,101 @@ def hours_by_year(weights: YearWeights, receptors: Receptors, answer: dict[str, 
 
     Parameters
     ----------
-    answer : the question's, in order of row, receptor and time
+    answer : the question's
     """
-    spells = _weighed(weights, receptors, answer)
-    direct = np.bincount(spells.receptor, spells.sun_s, minlength=len(receptors))
-    possible_s = spells.possible_s.sum(axis=1)[receptors.orientation]
-    error = year_error(spells, receptors, weights.question.step_s)
+    tables = np.stack([weights.of(normal) for normal in receptors.normals])
+    possible = tables[:, :, -1]
+    spells = _on_used_rows(answer, possible.any(axis=0))
+    place = spells.row * (CELLS + 1) + receptors.orientation[spells.receptor] * tables[0].size
+    sums = tables.ravel()
+    at_begin, at_end = (_read_off(sums, place, at) for at in (spells.begin, spells.end))
+    sun_s = at_end - at_begin
+    direct = np.bincount(spells.receptor, sun_s, minlength=len(receptors))
+    possible_s = possible.sum(axis=1)[receptors.orientation]
+    shade_s = np.where(spells.follows, np.roll(at_begin, -1) - at_end, 0.0)
+    error = _year_error(spells, sun_s, shade_s, possible[receptors.orientation].T, weights)
     return SunHours(np.minimum(direct, possible_s) / 3600, possible_s / 3600, error / 3600)
 
 
 @dataclass(frozen=True)
-class Weighed:
-    """The spells on all rows, and what a period makes of them.
+class RowSpells:
+    """Spells on the rows that a period uses, in order of row, receptor and time.
 
     Attributes
     ----------
-    receptor, row : (s,) int64
-    sun_s : (s,) float64, seconds of the period that the spell stands for
-    shade_s : (s,) float64, those of the shade between it and the next on its row
-    length_s, gap_s : (s,) float64, how long both are on the row [s of hour angle]; gap 0 where none follows
-    possible_s : (k, rows) float64, seconds that a row stands for, by orientation
+    row, receptor : (s,) int64
+    begin, end : (s,) int64, as they are stored
+    follows : (s,) bool, whether the next spell is the same receptor's on the same row
     """
 
-    receptor: NDArray[np.int64]
     row: NDArray[np.int64]
-    sun_s: NDArray[np.float64]
-    shade_s: NDArray[np.float64]
-    length_s: NDArray[np.float64]
-    gap_s: NDArray[np.float64]
-    possible_s: NDArray[np.float64]
+    receptor: NDArray[np.int64]
+    begin: NDArray[np.int64]
+    end: NDArray[np.int64]
+    follows: NDArray[np.bool_]
 
 
-def _weighed(weights: YearWeights, receptors: Receptors, answer: dict[str, NDArray]) -> Weighed:
-    receptor, row = answer["receptor"].astype(np.int64), answer["row"].astype(np.int64)
-    begin, end = (answer[side].astype(np.float64) for side in ("begin", "end"))
-    orientation = receptors.orientation[receptor]
-    follows = np.zeros(len(receptor), dtype=bool)
-    follows[:-1] = (receptor[1:] == receptor[:-1]) & (row[1:] == row[:-1])
-    next_begin = np.where(follows, np.roll(begin, -1), end)
-    sun, shade = np.zeros(len(receptor)), np.zeros(len(receptor))
-    possible = np.zeros((len(receptors.normals), len(weights.declinations)))
-    for number, normal in enumerate(receptors.normals):
-        summed = weights.of(normal)
-        possible[number] = summed[:, -1]
-        mine = np.flatnonzero(orientation == number)
-        at_begin, at_end, at_next = (_read_off(summed, row[mine], at[mine]) for at in (begin, end, next_begin))
-        sun[mine], shade[mine] = at_end - at_begin, at_next - at_end
-    return Weighed(receptor, row, sun, shade, end - begin, next_begin - end, possible)
+def _on_used_rows(answer: dict[str, NDArray], used: NDArray[np.bool_]) -> RowSpells:
+    """The stored spells from the first to the last row that has weight."""
+    rows = np.flatnonzero(used)
+    first, last = (int(rows[0]), int(rows[-1]) + 1) if len(rows) else (0, 0)
+    counts = answer["count"].astype(np.int64)
+    before = int(counts[:first].sum())
+    counts = counts[first:last]
+    run = slice(before, before + int(counts.sum()))
+    cell = np.repeat(np.arange(counts.size), counts.ravel())
+    row, receptor = np.divmod(cell, counts.shape[1])
+    follows = np.append(cell[1:] == cell[:-1], False) if len(cell) else np.zeros(0, dtype=bool)
+    return RowSpells(row + first, receptor, answer["begin"][run].astype(np.int64), answer["end"][run].astype(np.int64), follows)
 
 
-def year_error(spells: Weighed, receptors: Receptors, step_s: float) -> NDArray[np.float64]:
+def _year_error(
+    spells: RowSpells,
+    sun_s: NDArray[np.float64],
+    shade_s: NDArray[np.float64],
+    possible: NDArray[np.float64],
+    weights: YearWeights,
+) -> NDArray[np.float64]:
     """How far the hours of each receptor (n,) may be off [s].
 
-    Three independent causes, added as squares. A spell shorter than the step is met on a row with
-    the chance of its length over the step: what is seen of short ones says how much was missed.
-    Between rows, edges that do not move evenly bend the share of sun from row to row. And a little
-    that no face shows of itself. The weights were set on random scenes, see DEVELOPERS.md.
+    Three independent causes, added as squares. Between two rows the ends of a spell are known to a
+    part of a step, for as many days as the row stands for. A spell shorter than the step is met on
+    a row with the chance of its length over the step: what is seen of short ones says how much was
+    missed. And where edges do not move evenly, the share of sun bends from row to row. The weights
+    of the three were set on a dense block, at five densities of rows and samples: see DEVELOPERS.md.
+
+    Parameters
+    ----------
+    sun_s : (s,) float64, seconds of the period that each spell stands for
+    shade_s : (s,) float64, those of the shade between it and the next
+    possible : (rows, n) float64, seconds that each row stands for
     """
-    n = len(receptors)
+    n, step_s = possible.shape[1], weights.question.step_s
+    ends = np.bincount(spells.receptor, weights.days[spells.row] ** 2, minlength=n)
+    ends = step_s**2 * np.maximum(ends, FEWEST_SPELLS * np.max(weights.days) ** 2)
     hidden = np.zeros(n)
-    for seconds, length in ((spells.sun_s, spells.length_s), (spells.shade_s, spells.gap_s)):
-        short = np.flatnonzero((length < 2 * step_s) & (length > 0))
-        variance = seconds[short] ** 2 * step_s / np.maximum(length[short], SHORTEST_S)
-        hidden += np.bincount(spells.receptor[short], variance, minlength=n)
-    rows = spells.possible_s.shape[1]
-    sun = np.bincount(spells.row * n + spells.receptor, spells.sun_s, minlength=rows * n).reshape(rows, n)
-    possible = spells.possible_s[receptors.orientation].T
-    share = np.divide(sun, possible, out=np.zeros(sun.shape), where=possible > 0)
-    bend = np.zeros_like(share)
-    bend[1:-1] = np.where((possible[2:] > 0) & (possible[:-2] > 0), share[:-2] - 2 * share[1:-1] + share[2:], 0.0)
-    bent = ((possible * bend) ** 2).sum(axis=0)
-    unseen = (UNSEEN * possible.sum(axis=0)) ** 2
-    return np.asarray(np.sqrt(HIDDEN**2 * hidden + BENT**2 * bent + unseen))
+    follows = np.flatnonzero(spells.follows)
+    gap = spells.begin[follows + 1] - spells.end[follows]
+    for which, seconds, length in ((None, sun_s, spells.end - spells.begin), (follows, shade_s, gap)):
+        short = np.flatnonzero(length < 2 * step_s / PLACE_S)
+        length_s = np.maximum(length[short] * PLACE_S, SHORTEST_S)
+        spell = short if which is None else which[short]
+        hidden += np.bincount(spells.receptor[spell], seconds[spell] ** 2 * (step_s / length_s), minlength=n)
+    used = np.flatnonzero(possible.any(axis=1))
+    first, last = (used[0], used[-1] + 1) if len(used) else (0, 0)
+    possible = possible[first:last]
+    sun = np.bincount((spells.row - first) * n + spells.receptor, sun_s, minlength=possible.size).reshape(possible.shape)
+    share = np.divide(sun, possible, out=np.zeros(possible.shape), where=possible > 0)
+    bend = share[:-2] - 2 * share[1:-1] + share[2:]
+    bend *= np.where((possible[2:] > 0) & (possible[:-2] > 0), possible[1:-1], 0.0)
+    bent = np.einsum("rn,rn->n", bend, bend)
+    error = np.sqrt(PER_SPELL**2 * ends + HIDDEN**2 * hidden + BENT**2 * bent)
+    return np.asarray(np.minimum(error, possible.sum(axis=0)))
 
 
-def _read_off(summed: NDArray[np.float64], row: NDArray[np.int64], at: NDArray[np.float64]) -> NDArray[np.float64]:
-    """The sum up to a place on a row [s of hour angle], between its cells in proportion."""
-    place = (at + HALF_TURN_S) / CELL_S
-    cell = np.minimum(place.astype(np.int64), CELLS - 1)
-    below = summed[row, cell]
-    return below + (place - cell) * (summed[row, cell + 1] - below)
+def _read_off(sums: NDArray[np.float64], start: NDArray[np.int64], at: NDArray[np.int64]) -> NDArray[np.float64]:
+    """The sum up to a stored place on a row whose cells begin at `start`, between cells in proportion."""
+    cell, inside = np.divmod(at, PLACES_A_CELL)
+    cell = start + np.minimum(cell, CELLS - 1)
+    below = sums[cell]
+    return below + (sums[cell + 1] - below) * (inside / PLACES_A_CELL)

@@ -2,6 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+from concurrent.futures import ThreadPoolExecutor
+from typing import TypeVar
+
 import numpy as np
 
 from insol.measures.by_days import Spells, added, hours_by_day, spans_of
@@ -9,13 +13,15 @@ from insol.measures.by_steps import hours_by_steps
 from insol.measures.by_year import YearWeights, hours_by_year
 from insol.measures.sun_hours import SunHours, joined
 from insol.sun.position import SunTrack
-from insol.visibility.answering import chunk_size, chunks_of
+from insol.visibility.answering import chunk_size, chunks_of, usable_cores
 from insol.visibility.days import DayQuestion
 from insol.visibility.plan import PeriodPlan
 from insol.visibility.receptors import Receptors
 from insol.visibility.steps import StepsQuestion
 from insol.visibility.store import Store
 from insol.visibility.year import YearQuestion
+
+T = TypeVar("T")
 
 Chunk = tuple[int, int, Receptors]
 """Number, first receptor, receptors."""
@@ -43,26 +49,36 @@ def _by_rows(plan: PeriodPlan, chunks: list[Chunk], store: Store, track: SunTrac
     (question,) = plan.questions
     assert isinstance(question, YearQuestion)
     weights = YearWeights(question, plan.intervals, track)
-    return joined([hours_by_year(weights, piece, store.read(question.name, number)) for number, _, piece in chunks])
+    return joined(
+        on_all_cores(lambda chunk: hours_by_year(weights, chunk[2], store.read(question.name, chunk[0])), chunks)
+    )
 
 
 def _by_steps(plan: PeriodPlan, chunks: list[Chunk], store: Store) -> SunHours:
     (question,) = plan.questions
     assert isinstance(question, StepsQuestion)
-    return joined([
-        hours_by_steps(question, plan.intervals, piece, store.read(question.name, number)["open"])
-        for number, _, piece in chunks
-    ])  # fmt: skip
+    return joined(
+        on_all_cores(
+            lambda chunk: hours_by_steps(question, plan.intervals, chunk[2], store.read(question.name, chunk[0])["open"]),
+            chunks,
+        )
+    )
 
 
 def _by_days(plan: PeriodPlan, chunks: list[Chunk], store: Store) -> tuple[SunHours, Spells]:
-    pieces = [(first, *_days_of_chunk(plan, piece, store, number)) for number, first, piece in chunks]
+    pieces = on_all_cores(lambda chunk: _days_of_chunk(plan, chunk[2], store, chunk[0]), chunks)
     spells = Spells(
-        receptor=np.concatenate([found.receptor + first for first, _, found in pieces]),
-        begin=np.concatenate([found.begin for _, _, found in pieces]),
-        end=np.concatenate([found.end for _, _, found in pieces]),
+        receptor=np.concatenate([found.receptor + first for (_, found), (_, first, _) in zip(pieces, chunks, strict=True)]),
+        begin=np.concatenate([found.begin for _, found in pieces]),
+        end=np.concatenate([found.end for _, found in pieces]),
     )
-    return joined([hours for _, hours, _ in pieces]), spells
+    return joined([hours for hours, _ in pieces]), spells
+
+
+def on_all_cores(work: Callable[[Chunk], T], chunks: list[Chunk]) -> list[T]:
+    """The work done on every chunk, in their order; numpy lets go of the interpreter for most of it."""
+    with ThreadPoolExecutor(usable_cores()) as pool:
+        return list(pool.map(work, chunks))
 
 
 def _days_of_chunk(plan: PeriodPlan, receptors: Receptors, store: Store, chunk: int) -> tuple[SunHours, Spells]:

@@ -23,6 +23,9 @@ SECONDS_PER_DEGREE = 240.0
 
 HALF_TURN_S = 180.0 * SECONDS_PER_DEGREE
 
+PLACE_S = 1.5
+"""Stored begins and ends are whole numbers of this [s], from the lower transit on: sixteen bits hold a turn."""
+
 
 @dataclass(frozen=True)
 class Row:

@@ -306,5 +306,6 @@ def spells_of(traced: Traced) -> tuple[NDArray[np.int64], NDArray[np.float64], N
     first, last = np.flatnonzero(traced.open_first), np.flatnonzero(open_last)
     begin_visit, begin = np.concatenate([first, edge_visit[opens]]), np.concatenate([visits.begin[first], edge_at[opens]])
     end_visit, end = np.concatenate([edge_visit[~opens], last]), np.concatenate([edge_at[~opens], visits.end[last]])
-    opening, closing = np.lexsort((begin, begin_visit)), np.lexsort((end, end_visit))
+    # Both halves ascend already, and within a visit the first half comes first.
+    opening, closing = np.argsort(begin_visit, kind="stable"), np.argsort(end_visit, kind="stable")
     return visits.receptor[begin_visit[opening]], begin[opening], end[closing]

@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from insol.casting.contract import Caster
 from insol.visibility.asking import CheckStop
-from insol.visibility.lattice import HALF_TURN_S, Row, rows_over
+from insol.visibility.lattice import HALF_TURN_S, PLACE_S, Row, rows_over
 from insol.visibility.receptors import Receptors
 from insol.visibility.tracing import (
     Guess,
@@ -43,7 +43,7 @@ class YearQuestion:
 
     latitude: float
     north_deg: float
-    coarse: int = 24
+    coarse: int = 16
     levels: int = 2
     step_s: float = 600.0
     width_s: float = 20.0
@@ -68,19 +68,18 @@ class YearQuestion:
 
         Returns
         -------
-        `row` (s,) uint16, `receptor` (s,) int32, `begin` and `end` (s,) float32 in seconds of hour
-        angle, in order of row, receptor and time. A spell that lasts to an end of its visit runs on
-        to the middle between visits, or to a half turn: beyond a visit the sun is behind the face.
+        `count` (rows, n) uint8, spells of each receptor on each row; `begin` and `end` (s,) uint16,
+        in order of row, receptor and time, in PLACE_S of hour angle from the lower transit. A spell
+        that lasts to an end of its visit runs on to the middle between visits, or to a half turn:
+        beyond a visit the sun is behind the face.
         """
         rows = self.rows()
         traced = _trace_rows(self, rows, caster, receptors, check_stop)
-        pieces = [_running_on(traced[number], number) for number in range(len(rows))]
-        row, receptor, begin, end = (np.concatenate(column) for column in zip(*pieces, strict=True))
+        pieces = [_running_on(traced[number], len(receptors)) for number in range(len(rows))]
         return {
-            "row": row.astype(np.uint16),
-            "receptor": receptor.astype(np.int32),
-            "begin": begin.astype(np.float32),
-            "end": end.astype(np.float32),
+            "count": np.stack([count for count, _, _ in pieces]),
+            "begin": np.concatenate([begin for _, begin, _ in pieces]),
+            "end": np.concatenate([end for _, _, end in pieces]),
         }
 
     def samples(self, row: Row, *, shifted: bool) -> NDArray[np.float64]:
@@ -149,7 +148,7 @@ class _Between:
             open_first[mine] = found.open_first
             edge_visit = np.concatenate([edge_visit, mine[found.edge_visit]])
             edge_at = np.concatenate([edge_at, found.edge_at])
-        order = np.lexsort((edge_at, edge_visit))
+        order = np.argsort(edge_visit, kind="stable")  # both halves ascend, and no visit is in both
         return Traced(self.visits, open_first, edge_visit[order], edge_at[order])
 
     def _alike_visits(self) -> NDArray[np.bool_]:
@@ -245,10 +244,13 @@ def open_last(traced: Traced) -> NDArray[np.bool_]:
     return np.asarray(traced.open_first ^ odd)
 
 
-def _running_on(traced: Traced, number: int) -> tuple[NDArray, NDArray, NDArray, NDArray]:
-    """Row, receptor, begin and end of a row's spells, those at the ends of visits run on."""
-    receptor, begin, end = spells_of(Traced(_territories(traced.visits), traced.open_first, traced.edge_visit, traced.edge_at))
-    return np.full(len(receptor), number), receptor, begin, end
+def _running_on(traced: Traced, count: int) -> tuple[NDArray, NDArray, NDArray]:
+    """Number of spells (n,) and their begins and ends on a row as they are stored, those at the ends of visits run on."""
+    widened = Traced(_territories(traced.visits), traced.open_first, traced.edge_visit, traced.edge_at)
+    receptor, begin, end = spells_of(widened)
+    # Two samples hold one edge between them at most: from a step of 200 s on, fewer than 256 spells.
+    number = np.bincount(receptor, minlength=count).astype(np.uint8)
+    return number, *(np.round((at + HALF_TURN_S) / PLACE_S).astype(np.uint16) for at in (begin, end))
 
 
 def _territories(visits: Visits) -> Visits:
