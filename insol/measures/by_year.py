@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from insol.conventions import GRAZING
-from insol.measures.sun_hours import SunHours
+from insol.measures.sun_hours import SunHours, joined
 from insol.sun.position import SunTrack, direction_from
 from insol.sun.times import Intervals
 from insol.visibility.lattice import HALF_TURN_S, PLACE_S, SECONDS_PER_DEGREE
@@ -25,10 +25,13 @@ CELLS = int(2 * HALF_TURN_S / CELL_S)
 
 PLACES_A_CELL = int(CELL_S / PLACE_S)
 
+MOST_TABLES = 32
+"""Orientations whose weights are held beside each other for one chunk: a megabyte each."""
+
 MOST_KEPT = 64
 """Orientations whose weights are kept at a time: half a megabyte each."""
 
-PER_SPELL, HIDDEN, BENT = 0.45, 0.5, 0.1
+ENDS, MISSED, JUMPS = 0.4, 1.5, 2.0
 """Weights of the three causes of error: of a step for each spell, and of their own estimates for the others."""
 
 FEWEST_SPELLS = 4
@@ -132,18 +135,38 @@ def hours_by_year(weights: YearWeights, receptors: Receptors, answer: dict[str, 
     ----------
     answer : the question's
     """
+    if not len(receptors):
+        return SunHours(np.zeros(0), np.zeros(0), np.zeros(0))
+    if len(receptors.normals) > MOST_TABLES:
+        return _in_halves(weights, receptors, answer)
     tables = np.stack([weights.of(normal) for normal in receptors.normals])
     possible = tables[:, :, -1]
     spells = _on_used_rows(answer, possible.any(axis=0))
-    place = spells.row * (CELLS + 1) + receptors.orientation[spells.receptor] * tables[0].size
+    place = spells.row * np.int32(CELLS + 1) + (receptors.orientation * np.int32(tables[0].size))[spells.receptor]
     sums = tables.ravel()
     at_begin, at_end = (_read_off(sums, place, at) for at in (spells.begin, spells.end))
     sun_s = at_end - at_begin
-    direct = np.bincount(spells.receptor, sun_s, minlength=len(receptors))
-    possible_s = possible.sum(axis=1)[receptors.orientation]
     shade_s = np.where(spells.follows, np.roll(at_begin, -1) - at_end, 0.0)
-    error = _year_error(spells, sun_s, shade_s, possible[receptors.orientation].T, weights)
-    return SunHours(np.minimum(direct, possible_s) / 3600, possible_s / 3600, error / 3600)
+    missed, variance = _missed(spells, sun_s, shade_s, weights.question.step_s, len(receptors))
+    possible_s = possible.sum(axis=1)[receptors.orientation]
+    direct = np.clip(np.bincount(spells.receptor, sun_s, minlength=len(receptors)) + missed, 0.0, possible_s)
+    ends = _ends_error(spells, weights, len(receptors))
+    jumps = _jumps(answer["count"], spells, sun_s, possible[receptors.orientation].T)
+    error = np.sqrt(ENDS**2 * ends**2 + MISSED**2 * variance + JUMPS**2 * jumps)
+    return SunHours(direct / 3600, possible_s / 3600, np.minimum(error, possible_s) / 3600)
+
+
+def _in_halves(weights: YearWeights, receptors: Receptors, answer: dict[str, NDArray]) -> SunHours:
+    """The hours of many orientations, whose weights would not fit beside each other."""
+    half = len(receptors) // 2
+    counts = answer["count"].astype(np.int64)
+    owner = np.repeat(np.tile(np.arange(counts.shape[1]), len(counts)), counts.ravel())
+    pieces = []
+    for first, last in ((0, half), (half, len(receptors))):
+        mine = (owner >= first) & (owner < last)
+        part = {"count": answer["count"][:, first:last], "begin": answer["begin"][mine], "end": answer["end"][mine]}
+        pieces.append(hours_by_year(weights, receptors.piece(first, last), part))
+    return joined(pieces)
 
 
 @dataclass(frozen=True)
@@ -152,15 +175,15 @@ class RowSpells:
 
     Attributes
     ----------
-    row, receptor : (s,) int64
-    begin, end : (s,) int64, as they are stored
+    row, receptor : (s,) int32
+    begin, end : (s,) int32, as they are stored
     follows : (s,) bool, whether the next spell is the same receptor's on the same row
     """
 
-    row: NDArray[np.int64]
-    receptor: NDArray[np.int64]
-    begin: NDArray[np.int64]
-    end: NDArray[np.int64]
+    row: NDArray[np.int32]
+    receptor: NDArray[np.int32]
+    begin: NDArray[np.int32]
+    end: NDArray[np.int32]
     follows: NDArray[np.bool_]
 
 
@@ -172,59 +195,77 @@ def _on_used_rows(answer: dict[str, NDArray], used: NDArray[np.bool_]) -> RowSpe
     before = int(counts[:first].sum())
     counts = counts[first:last]
     run = slice(before, before + int(counts.sum()))
-    cell = np.repeat(np.arange(counts.size), counts.ravel())
-    row, receptor = np.divmod(cell, counts.shape[1])
+    cell = np.repeat(np.arange(counts.size, dtype=np.int32), counts.ravel())
+    row = np.repeat(np.arange(last - first, dtype=np.int32), counts.sum(axis=1))
+    receptor = cell - row * np.int32(counts.shape[1])
     follows = np.append(cell[1:] == cell[:-1], False) if len(cell) else np.zeros(0, dtype=bool)
-    return RowSpells(row + first, receptor, answer["begin"][run].astype(np.int64), answer["end"][run].astype(np.int64), follows)
+    begin, end = (answer[side][run].astype(np.int32) for side in ("begin", "end"))
+    return RowSpells(row + np.int32(first), receptor, begin, end, follows)
 
 
-def _year_error(
-    spells: RowSpells,
-    sun_s: NDArray[np.float64],
-    shade_s: NDArray[np.float64],
-    possible: NDArray[np.float64],
-    weights: YearWeights,
-) -> NDArray[np.float64]:
-    """How far the hours of each receptor (n,) may be off [s].
+def _missed(
+    spells: RowSpells, sun_s: NDArray[np.float64], shade_s: NDArray[np.float64], step_s: float, count: int
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Seconds of sun (n,) that the samples missed, and the variance of that.
 
-    Three independent causes, added as squares. Between two rows the ends of a spell are known to a
-    part of a step, for as many days as the row stands for. A spell shorter than the step is met on
-    a row with the chance of its length over the step: what is seen of short ones says how much was
-    missed. And where edges do not move evenly, the share of sun bends from row to row. The weights
-    of the three were set on a dense block, at five densities of rows and samples: see DEVELOPERS.md.
+    A spell shorter than the step is met on a row with the chance p of its length over the step. Each
+    that was met stands for 1 / p of its kind (Horvitz and Thompson, 1952): short sun is added, short
+    shade taken away.
 
     Parameters
     ----------
-    sun_s : (s,) float64, seconds of the period that each spell stands for
-    shade_s : (s,) float64, those of the shade between it and the next
-    possible : (rows, n) float64, seconds that each row stands for
+    sun_s, shade_s : (s,) float64, seconds of the period that each spell, and the shade after it, stand for
     """
-    n, step_s = possible.shape[1], weights.question.step_s
-    ends = np.bincount(spells.receptor, weights.days[spells.row] ** 2, minlength=n)
-    ends = step_s**2 * np.maximum(ends, FEWEST_SPELLS * np.max(weights.days) ** 2)
-    hidden = np.zeros(n)
     follows = np.flatnonzero(spells.follows)
     gap = spells.begin[follows + 1] - spells.end[follows]
-    for which, seconds, length in ((None, sun_s, spells.end - spells.begin), (follows, shade_s, gap)):
-        short = np.flatnonzero(length < 2 * step_s / PLACE_S)
-        length_s = np.maximum(length[short] * PLACE_S, SHORTEST_S)
-        spell = short if which is None else which[short]
-        hidden += np.bincount(spells.receptor[spell], seconds[spell] ** 2 * (step_s / length_s), minlength=n)
+    everyone = np.arange(len(sun_s))
+    missed, variance = np.zeros(count), np.zeros(count)
+    for spell, seconds, length, sign in (
+        (everyone, sun_s, spells.end - spells.begin, 1.0), (follows, shade_s[follows], gap, -1.0),
+    ):  # fmt: skip
+        short = np.flatnonzero(length < step_s / PLACE_S)
+        chance = np.maximum(length[short] * PLACE_S, SHORTEST_S) / step_s
+        stands_for = seconds[short] / chance
+        receptor = spells.receptor[spell[short]]
+        missed += sign * np.bincount(receptor, stands_for - seconds[short], minlength=count)
+        variance += np.bincount(receptor, stands_for**2 * (1.0 - chance), minlength=count)
+    return missed, variance
+
+
+def _ends_error(spells: RowSpells, weights: YearWeights, count: int) -> NDArray[np.float64]:
+    """A step for each spell and for as many days as its row stands for, added as squares: (n,) [s]."""
+    squares = np.bincount(spells.receptor, weights.days[spells.row] ** 2, minlength=count)
+    return weights.question.step_s * np.sqrt(np.maximum(squares, FEWEST_SPELLS * np.max(weights.days) ** 2))
+
+
+def _jumps(
+    counts: NDArray[np.uint8], spells: RowSpells, sun_s: NDArray[np.float64], possible: NDArray[np.float64]
+) -> NDArray[np.float64]:
+    """Squares (n,) [s²] of how far the sun of neighbouring rows differs where their spells differ in number.
+
+    There something came or went between them, and where is not known.
+
+    Parameters
+    ----------
+    counts : (rows, n), spells of each receptor on each row
+    possible : (rows, n) float64, seconds that each row stands for
+    """
     used = np.flatnonzero(possible.any(axis=1))
-    first, last = (used[0], used[-1] + 1) if len(used) else (0, 0)
-    possible = possible[first:last]
-    sun = np.bincount((spells.row - first) * n + spells.receptor, sun_s, minlength=possible.size).reshape(possible.shape)
+    first, last = (int(used[0]), int(used[-1]) + 1) if len(used) else (0, 0)
+    possible, counts = possible[first:last], counts[first:last]
+    flat = (spells.row - np.int32(first)) * np.int32(possible.shape[1]) + spells.receptor
+    sun = np.bincount(flat, sun_s, minlength=possible.size).reshape(possible.shape)
     share = np.divide(sun, possible, out=np.zeros(possible.shape), where=possible > 0)
-    bend = share[:-2] - 2 * share[1:-1] + share[2:]
-    bend *= np.where((possible[2:] > 0) & (possible[:-2] > 0), possible[1:-1], 0.0)
-    bent = np.einsum("rn,rn->n", bend, bend)
-    error = np.sqrt(PER_SPELL**2 * ends + HIDDEN**2 * hidden + BENT**2 * bent)
-    return np.asarray(np.minimum(error, possible.sum(axis=0)))
+    jump = np.diff(share, axis=0) * np.minimum(possible[1:], possible[:-1])
+    jump[counts[1:] == counts[:-1]] = 0.0
+    return np.einsum("rn,rn->n", jump, jump)
 
 
-def _read_off(sums: NDArray[np.float64], start: NDArray[np.int64], at: NDArray[np.int64]) -> NDArray[np.float64]:
+def _read_off(sums: NDArray[np.float64], start: NDArray[np.int32], at: NDArray[np.int32]) -> NDArray[np.float64]:
     """The sum up to a stored place on a row whose cells begin at `start`, between cells in proportion."""
-    cell, inside = np.divmod(at, PLACES_A_CELL)
-    cell = start + np.minimum(cell, CELLS - 1)
+    place = at * (1.0 / PLACES_A_CELL)
+    cell = np.minimum(place.astype(np.int32), CELLS - 1)
+    inside = place - cell
+    cell += start
     below = sums[cell]
-    return below + (sums[cell + 1] - below) * (inside / PLACES_A_CELL)
+    return below + (sums[cell + 1] - below) * inside

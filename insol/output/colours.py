@@ -2,7 +2,9 @@
 
 Dark blue for shade to yellow for sun: the reading that needs no legend. The scale is cividis
 (Nuñez, Anderton and Renslow, 2018, PLoS ONE 13(7): e0199239): even in lightness, so that it also
-prints in grey, and the same to readers with and without a colour-vision deficiency.
+prints in grey, and the same to readers with and without a colour-vision deficiency. It belongs to
+no one's program. Hours and shaded fraction run along it in opposite directions: dark is shade in
+both, so that a street does not turn from light to dark when the quantity is changed.
 """
 
 from __future__ import annotations
@@ -16,13 +18,17 @@ from numpy.typing import NDArray
 Quantity = Literal["direct_h", "shaded_fraction"]
 
 ANCHORS = (
-    "00224e", "002e6a", "1a386f", "32436d", "434e6c", "535a6d", "61656f", "6f7073", "7d7c78",
-    "8c8878", "9b9476", "aba072", "bcae6c", "cdbb63", "dec958", "f0d846", "fee838",
+    (0, "00224e"), (19, "00306f"), (21, "003170"), (23, "013271"), (28, "123570"), (34, "1e3a6f"),
+    (52, "36466c"), (84, "565c6d"), (126, "7b7a78"), (147, "8f8a78"), (179, "aea371"), (205, "c9b965"),
+    (219, "d9c55c"), (232, "e7d150"), (243, "f3db42"), (251, "fde334"), (255, "fee838"),
 )  # fmt: skip
-"""Cividis at seventeen even steps."""
+"""Rows of cividis's published table of 256; straight lines between them keep within two steps of 255 of it."""
 
-NO_VALUE = (206, 200, 196)
-"""Of faces without a value: a warm light grey that the scale does not hold."""
+NO_VALUE = (226, 210, 214)
+"""Of faces without a value: a pale rose that neither the scale nor the surroundings hold."""
+
+NO_VALUE_STRIPE = (158, 128, 136)
+"""Of the hatching over them where lines can be drawn: told apart without colour, too."""
 
 STEPS = (1.0, 2.0, 4.0, 5.0)
 """Ticks stand at these multiples of powers of ten."""
@@ -73,8 +79,8 @@ def colours_of(values: NDArray[np.float64], scale: Scale) -> NDArray[np.uint8]:
     """Colours (n, 3) of values (n,); NO_VALUE for NaN."""
     share = np.clip((values - scale.low) / (scale.high - scale.low), 0.0, 1.0)
     share = np.where(np.isnan(values), 0.0, share if scale.sunny_high else 1.0 - share)
-    anchors = np.array([[int(code[k : k + 2], 16) for k in (0, 2, 4)] for code in ANCHORS], dtype=np.float64)
-    place = share * (len(anchors) - 1)
-    colours = np.column_stack([np.interp(place, np.arange(len(anchors)), anchors[:, k]) for k in range(3)])
+    rows = [row for row, _ in ANCHORS]
+    channels = np.array([tuple(bytes.fromhex(code)) for _, code in ANCHORS], dtype=np.float64).T
+    colours = np.column_stack([np.interp(255 * share, rows, channel) for channel in channels])
     colours[np.isnan(values)] = NO_VALUE
     return np.round(colours).astype(np.uint8)

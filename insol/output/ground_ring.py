@@ -1,4 +1,4 @@
-"""A ring lying on the ground: its needle shows north, its width a round length."""
+"""A ring as it would lie on the ground of the scene: its needle shows north, its width a round length."""
 
 from __future__ import annotations
 
@@ -7,43 +7,48 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from insol.output.view_data import ViewData
+from insol.output.stage import Camera
 
-SHARE = 0.07
-"""Radius over the width of what is shown, at most."""
+NEEDLE = 0.16
+"""Half of the needle's width over the ring's radius."""
 
 
 @dataclass(frozen=True)
 class GroundRing:
-    """The ring's line, its needle, and where its words stand."""
+    """The ring in the picture's plane, around the origin [m].
 
-    points: NDArray[np.float64]  # (p, 3) [m], closed
-    needle: NDArray[np.float64]  # (1, 3, 3)
-    north: NDArray[np.float64]  # (3,)
-    foot: NDArray[np.float64]  # (3,)
+    Attributes
+    ----------
+    rim : (p, 2) float64, closed
+    needle : (3, 2) float64, its tip in the middle
+    letter : (2,) float64, unit; the way from the tip to where its N stands
+    across_m : width of the ring
+    """
+
+    rim: NDArray[np.float64]
+    needle: NDArray[np.float64]
+    letter: NDArray[np.float64]
     across_m: float
 
 
-def ground_ring(data: ViewData) -> GroundRing:
-    """A ring beside the measured faces, at the height of the lowest of them."""
-    low, high = data.triangles.reshape(-1, 3).min(axis=0), data.triangles.reshape(-1, 3).max(axis=0)
-    radius = round_length(SHARE * float(np.hypot(*(high - low)[:2])) + 0.1)
-    centre = np.array([low[0] - 1.6 * radius, low[1] - 0.4 * radius, low[2]])
-    ring = centre + ring_points(radius)
-    north = north_of(data.north_deg)
-    east = np.array([north[1], -north[0], 0.0])
-    needle = centre + radius * np.stack([0.16 * east, north, -0.16 * east])
-    return GroundRing(ring, needle[None], centre + 1.3 * radius * north, centre - 1.35 * radius * north, 2 * radius)
-
-
-def ring_points(radius_m: float) -> NDArray[np.float64]:
-    """A level circle (p, 3) around the origin, closed."""
+def ground_ring(camera: Camera, north_deg: float, most_radius_m: float) -> GroundRing:
+    """The ring of the longest round width that a radius allows, as a camera sees it."""
+    radius = round_length(most_radius_m)
     turn = np.radians(np.arange(0, 361, 3))
-    return np.stack([np.sin(turn), np.cos(turn), np.zeros_like(turn)], axis=1) * radius_m
+    rim = np.stack([np.sin(turn), np.cos(turn), np.zeros_like(turn)], axis=1)
+    north = north_of(north_deg)
+    east = np.array([north[1], -north[0], 0.0])
+    needle = camera.flat(np.stack([NEEDLE * east, north, -NEEDLE * east]))
+    letter = needle[1] / max(float(np.linalg.norm(needle[1])), 1e-9)
+    return GroundRing(camera.flat(rim) * radius, needle * radius, letter, 2 * radius)
 
 
 def north_of(north_deg: float) -> NDArray[np.float64]:
-    """True north (3,) in the model's frame."""
+    """True north (3,) in the model's frame.
+
+    >>> north_of(90.0).round(6).tolist()  # +y bears east, so north lies to its left
+    [-1.0, 0.0, 0.0]
+    """
     return np.array([-np.sin(np.radians(north_deg)), np.cos(np.radians(north_deg)), 0.0])
 
 

@@ -9,6 +9,7 @@ from __future__ import annotations
 import re
 from collections.abc import Mapping
 from dataclasses import dataclass
+from itertools import count
 from pathlib import Path
 
 import numpy as np
@@ -17,6 +18,12 @@ from numpy.typing import NDArray
 from insol.errors import ResultError
 
 TYPES = {"<f8": "double", "<f4": "float", "<i4": "int", "|u1": "uchar"}
+
+END = "end_header"
+"""Nowhere else in a header: readers there are that look for it in the middle of a comment."""
+
+PLAIN = ("size", "corners", "red", "green", "blue")
+"""Columns of a face that are no values."""
 
 
 @dataclass(frozen=True)
@@ -37,7 +44,16 @@ def write_ply(
     ints: Mapping[str, NDArray[np.integer]],
     comments: tuple[str, ...] = (),
 ) -> None:
-    """Write triangles (t, 3, 3) with a colour (t, 3) and values (t,) each."""
+    """Write triangles with a colour and values each.
+
+    Parameters
+    ----------
+    triangles : (t, 3, 3) float64, in the model's own frame
+    colours : (t, 3) uint8
+    scalars : (t,) float each; on faces and on vertices, in single precision
+    ints : (t,) int each; on faces
+    comments : one line of the header each
+    """
     names = _property_names([*scalars, *ints])
     colour = [(channel, "u1") for channel in ("red", "green", "blue")]
     values = [(names[name], "<f4") for name in scalars]
@@ -71,10 +87,13 @@ def read_ply(path: Path) -> ColouredMesh:
         It is none, or cut short.
     """
     raw = path.read_bytes()
-    head, found, body = raw.partition(b"end_header\n")
+    head, found, body = raw.partition(f"{END}\n".encode("ascii"))
     if not found or not head.startswith(b"ply\nformat binary_little_endian"):
         raise ResultError("this is not a mesh that insol wrote", where=str(path))
-    counts, dtypes = _read_header(head.decode("ascii", "replace"))
+    try:
+        counts, dtypes = _read_header(head.decode("ascii", "replace"))
+    except (LookupError, ValueError, TypeError):
+        raise ResultError("this is not a mesh that insol wrote", where=str(path)) from None
     vertex_bytes = counts["vertex"] * dtypes["vertex"].itemsize
     if len(body) != vertex_bytes + counts["face"] * dtypes["face"].itemsize:
         raise ResultError("the mesh is cut short", where=str(path), hint="run again")
@@ -82,22 +101,19 @@ def read_ply(path: Path) -> ColouredMesh:
     face = np.frombuffer(body[vertex_bytes:], dtype=dtypes["face"])
     corners = np.stack([vertex[axis] for axis in "xyz"], axis=1)[face["corners"]]
     colours = np.stack([face[channel] for channel in ("red", "green", "blue")], axis=1)
-    plain = {"size", "corners", "red", "green", "blue"}
-    return ColouredMesh(corners, colours, {name: face[name] for name in face.dtype.names or () if name not in plain})
+    values = {name: face[name] for name in face.dtype.names or () if name not in PLAIN}
+    return ColouredMesh(corners, colours, values)
 
 
-def _header(
-    vertex: np.dtype, vertices: int, face: np.dtype, faces: int, comments: tuple[str, ...]
-) -> bytes:
+def _header(vertex: np.dtype, vertices: int, face: np.dtype, faces: int, comments: tuple[str, ...]) -> bytes:
     lines = ["ply", "format binary_little_endian 1.0", *(f"comment {_plain(comment)}" for comment in comments)]
     lines += [f"element vertex {vertices}", *_properties(vertex)]
     lines += [f"element face {faces}", "property list uchar int vertex_indices", *_properties(face)[2:]]
-    return ("\n".join(lines) + "\nend_header\n").encode("ascii")
+    return ("\n".join(lines) + f"\n{END}\n").encode("ascii")
 
 
 def _properties(dtype: np.dtype) -> list[str]:
-    fields = dtype.fields or {}
-    return [f"property {TYPES.get(fields[name][0].base.str, 'list')} {name}" for name in dtype.names or ()]
+    return [f"property {TYPES.get(dtype[name].base.str, 'list')} {name}" for name in dtype.names or ()]
 
 
 def _read_header(head: str) -> tuple[dict[str, int], dict[str, np.dtype]]:
@@ -114,20 +130,24 @@ def _read_header(head: str) -> tuple[dict[str, int], dict[str, np.dtype]]:
             fields[element] += [("size", "u1"), ("corners", "<i4", 3)]
         elif words[:1] == ["property"]:
             fields[element].append((words[2], kinds[words[1]]))
-    return counts, {element: np.dtype(columns) for element, columns in fields.items()}
+    dtypes = {element: np.dtype(columns) for element, columns in fields.items()}
+    missing = {*"xyz"} - {*(dtypes["vertex"].names or ())} | {*PLAIN} - {*(dtypes["face"].names or ())}
+    if missing:
+        raise KeyError(*missing)
+    return counts, dtypes
 
 
 def _property_names(names: list[str]) -> dict[str, str]:
     """Names that stay one word of plain letters in the header, each different from the others."""
-    taken: dict[str, str] = {}
+    found: dict[str, str] = {}
+    taken = {*"xyz", "vertex_indices", *PLAIN}
     for name in names:
-        word = re.sub(r"[^A-Za-z0-9_]", "_", name) or "value"
-        number = 2
-        while word in taken.values():
-            word, number = f"{re.sub(r'[^A-Za-z0-9_]', '_', name)}_{number}", number + 1
-        taken[name] = word
-    return taken
+        plain = re.sub(r"[^A-Za-z0-9_]", "_", name).replace(END, "end") or "value"
+        word = next(word for number in count(1) if (word := f"{plain}_{number}" if number > 1 else plain) not in taken)
+        found[name] = word
+        taken.add(word)
+    return found
 
 
 def _plain(text: str) -> str:
-    return re.sub(r"[^\x20-\x7e]", "?", text)
+    return re.sub(r"[^\x20-\x7e]", "?", text).replace(END, "end-header")

@@ -55,8 +55,8 @@ def chunk_size(count: int) -> int:
 
 
 def chunks_of(count: int, size: int) -> Iterator[tuple[int, slice]]:
-    """Number and range of each chunk of `count` receptors."""
-    for number, first in enumerate(range(0, count, size)):
+    """Number and range of each chunk of `count` receptors; one empty chunk of none."""
+    for number, first in enumerate(range(0, max(count, 1), size)):
         yield number, slice(first, min(first + size, count))
 
 

@@ -62,7 +62,7 @@ class Receptors:
         """Each orientation that occurs (in a part of the receptors) with the run of those that have it."""
         first, last = (within.start, within.stop) if within is not None else (0, len(self))
         starts = first + np.flatnonzero(np.diff(self.orientation[first:last], prepend=-1))
-        for start, end in zip(starts, np.append(starts[1:], last), strict=True):
+        for start, end in zip(starts, np.append(starts, last)[1:], strict=True):
             yield int(self.orientation[start]), slice(int(start), int(end))
 
 

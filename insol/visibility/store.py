@@ -6,8 +6,9 @@
       <question>/whole.json   written last: the question is answered for every chunk
 
 A chunk is written aside and renamed, so a file that is there is whole. Whatever happens to the
-process, the next run goes on after the last whole chunk. Deflate at its fastest level: runs of
-equal bits shrink to a tenth or less, at several times the speed of casting.
+process, the next run goes on after the last whole chunk. Bits are deflated at the fastest level:
+their runs shrink to a tenth or less, at several times the speed of casting. Begins and ends of
+spells would hardly shrink, and are stored as they are.
 """
 
 from __future__ import annotations
@@ -23,6 +24,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from insol.errors import ResultError
+
+ZIP_EPOCH = (1980, 1, 1, 0, 0, 0)
+"""The date of all entries: the same answers are the same bytes."""
 
 Arrays = dict[str, NDArray]
 
@@ -86,9 +90,11 @@ class FolderStore:
         path = self._path(self.folder, question, chunk)
         path.parent.mkdir(parents=True, exist_ok=True)
         aside = path.with_suffix(".writing")
-        with zipfile.ZipFile(aside, "w", zipfile.ZIP_DEFLATED, compresslevel=1) as archive:
+        with zipfile.ZipFile(aside, "w", compresslevel=1) as archive:
             for name, array in arrays.items():
-                with archive.open(f"{name}.npy", "w", force_zip64=True) as stream:
+                entry = zipfile.ZipInfo(f"{name}.npy", date_time=ZIP_EPOCH)
+                entry.compress_type = zipfile.ZIP_DEFLATED if array.dtype == np.uint8 else zipfile.ZIP_STORED
+                with archive.open(entry, "w", force_zip64=True) as stream:
                     np.lib.format.write_array(stream, np.ascontiguousarray(array), allow_pickle=False)
         os.replace(aside, path)
 

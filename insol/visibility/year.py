@@ -27,6 +27,9 @@ from insol.visibility.tracing import (
     visits_of,
 )
 
+THIN_S = 1800.0
+"""A shorter spell is thin [s]: between two rows it may lie where neither of them has it."""
+
 
 @dataclass(frozen=True)
 class YearQuestion:
@@ -185,6 +188,9 @@ class _Between:
         asked = differ.copy()
         asked[1:] |= differ[:-1]
         asked[:-1] |= differ[1:]
+        # What is thin may have moved by more than its own width: there nothing is known between the rows.
+        thin = (self._has_thin(self.before) | self._has_thin(self.after))[rough]
+        asked[:, thin] = True
         begin, end, ends_asked = self._ends(alike)
         chosen = np.zeros(len(self.receptors), dtype=bool)
         chosen[rough] = True
@@ -194,6 +200,14 @@ class _Between:
             number[self.visits.receptor[of_rough]], self.visits.begin[of_rough], self.visits.end[of_rough]
         )
         return Guess(visits, asked, open_a, ends_asked[of_rough], begin[of_rough], end[of_rough])
+
+    def _has_thin(self, traced: Traced) -> NDArray[np.bool_]:
+        """Receptors (n,) with two edges of one visit close to each other."""
+        same = traced.edge_visit[1:] == traced.edge_visit[:-1]
+        near = same & (np.diff(traced.edge_at) < THIN_S)
+        thin = np.zeros(len(self.receptors), dtype=bool)
+        thin[traced.visits.receptor[traced.edge_visit[1:][near]]] = True
+        return thin
 
     def _ends(self, alike: NDArray[np.bool_]) -> tuple[NDArray[np.bool_], NDArray[np.bool_], NDArray[np.bool_]]:
         """What both rows say of the begin and the end of each visit (v,), and whether they differ or cannot say."""

@@ -13,9 +13,9 @@ import pytest
 
 sys.path.insert(0, str(Path(__file__).parent))  # invented_town is imported by the tests beside it
 
-from invented_town import Town, write_town  # noqa: E402
+from invented_town import Town, write_town
 
-from insol.errors import MissingPackage  # noqa: E402
+from insol.errors import MissingPackage
 
 SCREEN = "1600x1100x24"
 XVFB_SECONDS = 20
@@ -61,6 +61,14 @@ def display(drawing_available: None) -> Iterator[str]:
     yield f":{number}"
     server.terminate()
     server.wait(XVFB_SECONDS)
+
+
+@pytest.fixture(scope="session")
+def environment() -> dict[str, str]:
+    """For a process of its own: this package can be imported, and VTK has not been told how to draw."""
+    found = {name: value for name, value in os.environ.items() if name != "VTK_DEFAULT_OPENGL_WINDOW"}
+    root = str(Path(__file__).resolve().parents[2])
+    return {**found, "PYTHONPATH": os.pathsep.join([root, *filter(None, [found.get("PYTHONPATH")])])}
 
 
 @pytest.fixture(scope="session")

@@ -21,7 +21,13 @@ OFFSET = np.array([429_157.25, 434_812.5, 31.75])
 """A place in a national grid: where single precision would lose decimetres."""
 
 NORTH_DEG = 17.0
-SITE = {"latitude": 53.79, "longitude": -1.55, "time_zone": "Europe/London", "elevation_m": 31.75, "north_deg": NORTH_DEG}
+SITE = {
+    "latitude": 53.79,
+    "longitude": -1.55,
+    "time_zone": "Europe/London",
+    "elevation_m": 31.75,
+    "north_deg": NORTH_DEG,
+}
 PERIODS = (
     ("equinox", "march-equinox", "2025-03-20", "2025-03-20", 12.0),
     ("winter", "2025-12-21", "2025-12-21", "2025-12-21", 7.45),
@@ -49,7 +55,7 @@ def write_town(
     folder.mkdir(parents=True)
     boxes = town_boxes()
     quads, parts = cut_town(boxes, spacing_m, part)
-    faces = faces_of(quads, parts)
+    faces = pd.concat([faces_of(quads, parts), windows_of(boxes)], ignore_index=True)
     triangles = quads[:, [[0, 1, 2], [0, 2, 3]]].reshape(-1, 3, 3)
     face_row = np.repeat(np.arange(len(quads), dtype=np.int32), 2)
     faces.to_csv(folder / "faces.csv", index=False)
@@ -69,7 +75,11 @@ def facts_of(title: str) -> dict[str, Any]:
     """What result.json says, as far as it is looked at."""
     keys = ("name", "days", "first_day", "last_day", "sun_up_h")
     periods = [dict(zip(keys, period, strict=True)) for period in PERIODS]
-    return {"title": title, "site": SITE, "periods": [{**p, "clock": "local", "from": None, "to": None} for p in periods]}
+    return {
+        "title": title,
+        "site": SITE,
+        "periods": [{**p, "clock": "local", "from": None, "to": None} for p in periods],
+    }
 
 
 def town_boxes() -> NDArray[np.float64]:
@@ -86,9 +96,7 @@ def box_quads(box: NDArray[np.float64]) -> NDArray[np.float64]:
     """Four walls and the roof (5, 4, 3), corners anticlockwise from outside."""
     (x0, y0, z0), (x1, y1, z1) = box
     ring = [(x0, y0), (x1, y0), (x1, y1), (x0, y1)]
-    walls = [
-        [(*a, z0), (*b, z0), (*b, z1), (*a, z1)] for a, b in zip(ring, ring[1:] + ring[:1], strict=True)
-    ]
+    walls = [[(*a, z0), (*b, z0), (*b, z1), (*a, z1)] for a, b in zip(ring, ring[1:] + ring[:1], strict=True)]
     return np.array([*walls, [(*corner, z1) for corner in ring]])
 
 
@@ -111,7 +119,7 @@ def cut_town(
     for number in MEASURED_BLOCKS:
         quads = np.concatenate([cut(quad, spacing_m) for quad in box_quads(boxes[number])])
         pieces.append(quads)
-        names += [("facades", part.format(number))] * len(quads)
+        names += [("facades", part.replace("{}", str(number)))] * len(quads)
     (x0, y0, _), (x1, _, _) = boxes[17][0], boxes[18][1]
     square = np.array([[x0, y0 + 22, 0], [x1, y0 + 22, 0], [x1, y0 + 42, 0], [x0, y0 + 42, 0]])
     pieces.append(cut(square, spacing_m))
@@ -148,6 +156,20 @@ def faces_of(quads: NDArray[np.float64], names: list[tuple[str, str]]) -> pd.Dat
         with np.errstate(invalid="ignore"):
             frame[f"{name}_shaded_fraction"] = np.where(possible > 0, 1 - direct / possible, np.nan)
         frame[f"{name}_error_h"] = np.where(covered, np.nan, longest / 144)
+    return frame
+
+
+def windows_of(boxes: NDArray[np.float64]) -> pd.DataFrame:
+    """Three named points on the wall of one block that looks along the model's -y, with the same hours each."""
+    (x0, y0, _), (x1, _, _) = boxes[MEASURED_BLOCKS[0]]
+    frame = pd.DataFrame({"measure": "windows", "part": "", "face": [1, 2, 3], "name": ["hall", "stair", "attic"]})
+    places = np.array([[x0 + share * (x1 - x0), y0, height] for share, height in ((0.2, 2), (0.5, 5), (0.8, 8))])
+    frame[["x_m", "y_m", "z_m"]] = places + OFFSET
+    frame["azimuth_deg"], frame["tilt_deg"] = (180.0 + NORTH_DEG) % 360, 90.0
+    frame["area_m2"], frame["status"] = 0.0, "measured"
+    for name, *_, longest in PERIODS:
+        frame[f"{name}_direct_h"], frame[f"{name}_possible_h"] = 0.25 * longest, 0.5 * longest
+        frame[f"{name}_shaded_fraction"], frame[f"{name}_error_h"] = 0.5, longest / 144
     return frame
 
 
