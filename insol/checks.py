@@ -33,7 +33,7 @@ def read_only(array: Any, dtype: Any, shape: tuple[int | None, ...], name: str) 
 
 def finite(array: NDArray[Any], name: str) -> NDArray[Any]:
     """The array itself, when no value in it is NaN or infinite."""
-    bad = np.flatnonzero(~np.isfinite(array).reshape(len(array), -1).all(axis=1)) if len(array) else []
+    bad: Any = np.flatnonzero(~np.isfinite(array).reshape(len(array), -1).all(axis=1)) if len(array) else []
     if len(bad):
         raise InputError(f"{name}: row {int(bad[0]) + 1} is not a finite number")
     return array

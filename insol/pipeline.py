@@ -130,9 +130,7 @@ def _answered(
     """Ask what is not stored, and derive every period's hours."""
     receptors, plans = prepared.receptors, prepared.plans
     with clock.stage("casting"):
-        tally = answer_all(
-            distinct(plans), prepared.caster, receptors, store, threads=threads, progress=clock.within
-        )
+        tally = answer_all(distinct(plans), prepared.caster, receptors, store, threads=threads, progress=clock.within)
     with clock.stage("measuring"):
         periods = tuple(_measured(plan, prepared, store) for plan in plans)
     return Results(

@@ -17,8 +17,10 @@ import tempfile
 from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import replace
+from functools import partial
 from pathlib import Path
 from time import perf_counter
+from typing import Any
 
 import numpy as np
 
@@ -89,19 +91,19 @@ def on_facades(prepared: Prepared, count: int) -> Prepared:
 class Counting:
     """A caster that counts its rays."""
 
-    def __init__(self, caster: object) -> None:
+    def __init__(self, caster: Any) -> None:
         self._caster, self.rays = caster, 0
-        self.engine, self.triangle_count = caster.engine, caster.triangle_count  # type: ignore[attr-defined]
+        self.engine, self.triangle_count = caster.engine, caster.triangle_count
 
-    def __getattr__(self, name: str) -> Callable[..., object]:
-        def asked(origins: np.ndarray, *rest: object) -> object:
+    def __getattr__(self, name: str) -> Callable[..., Any]:
+        def asked(origins: np.ndarray, *rest: Any) -> Any:
             self.rays += len(origins)
             return getattr(self._caster, name)(origins, *rest)
 
         return asked
 
 
-def timed(work: Callable[[], object]) -> tuple[float, object]:
+def timed(work: Callable[[], Any]) -> tuple[float, Any]:
     """Seconds, and what came of it."""
     begun = perf_counter()
     found = work()
@@ -113,9 +115,9 @@ def hours(folder: Path) -> None:
     model = dense_grid(folder, 20)
     study = study_of(model, "block-00[2-9]-*", 2.0, replace(YEAR, sampling="steps"))
     prepared = prepare(study)
-    question = prepared.plans[0].questions[0]
-    assert isinstance(question, StepsQuestion)
+    question: Any = prepared.plans[0].questions[0]
     receptors, caster = prepared.receptors, prepared.caster
+    embree_scene = caster._scene  # type: ignore[attr-defined]
     directions = question.track.directions(question.instants)
     front = in_front(receptors.normals, directions)
     single = directions.astype(np.float32)
@@ -131,7 +133,7 @@ def hours(folder: Path) -> None:
 
         def cast(mine: list) -> None:
             for chunk, column in mine:
-                caster._scene.run(receptors.origins[chunk], single[column : column + 1], query="OCCLUDED")  # type: ignore[attr-defined]
+                embree_scene.run(receptors.origins[chunk], single[column : column + 1], query="OCCLUDED")
 
         with ThreadPoolExecutor(threads) as pool:
             list(pool.map(cast, [runs[n::threads] for n in range(threads)]))
@@ -149,7 +151,7 @@ def hours(folder: Path) -> None:
     print(f"  our casting against embree, two threads      {ours / two:5.2f} ×   (bar 1.2)")
     print(f"  the whole run against embree, two threads    {whole / two:5.2f} ×   (bar 1.6)")
     print(f"  mask on disk                                 {size:5.1f} MB  (bar 60)")
-    print(f"  seconds by stage: {results.seconds}")  # type: ignore[attr-defined]
+    print(f"  seconds by stage: {results.seconds}")
 
 
 def year(folder: Path) -> None:
@@ -160,10 +162,10 @@ def year(folder: Path) -> None:
     study = study_of(model, "block-00[2-9]-*", 2.0, YEAR)
     ours, results = timed(lambda: run(study, out=folder / "year"))
     prepared = prepare(replace(study, periods=(replace(YEAR, sampling="steps"),)))
-    question = prepared.plans[0].questions[0]
-    directions = question.track.directions(question.instants)  # type: ignore[attr-defined]
+    question: Any = prepared.plans[0].questions[0]
+    directions = question.track.directions(question.instants)
     front = in_front(prepared.receptors.normals, directions)
-    mesh = trimesh.Trimesh(prepared.scene.vertices, prepared.scene.triangles, process=False)
+    mesh: Any = trimesh.Trimesh(prepared.scene.vertices, prepared.scene.triangles, process=False)
     sampled = np.arange(0, len(directions), 24)  # one in twenty-four, and multiplied: it would take minutes
 
     def by_trimesh() -> int:
@@ -179,7 +181,7 @@ def year(folder: Path) -> None:
     theirs = part * len(directions) / len(sampled)
     print(f"year: {len(prepared.receptors):,} points")
     print(f"  whole run along rows against hourly stepping through trimesh  {ours / theirs:5.2f} ×   (bar 0.5)")
-    print(f"  seconds by stage: {results.seconds}")  # type: ignore[attr-defined]
+    print(f"  seconds by stage: {results.seconds}")
 
 
 def accuracy(folder: Path) -> None:
@@ -190,19 +192,21 @@ def accuracy(folder: Path) -> None:
     intervals = intervals_of(YEAR, SITE, track)
     days = day_questions(YEAR, SITE, track)
 
-    def day_hours(question: object) -> np.ndarray:
-        finer = replace(question, step_s=TRUTH_STEP_S)  # type: ignore[type-var]
+    def day_hours(question: Any) -> np.ndarray:
+        finer = replace(question, step_s=TRUTH_STEP_S)
         stored = finer.answer(caster, receptors, lambda: None)
         spells = Spells(stored["receptor"], stored["begin"], stored["end"])
         return hours_by_day(finer, np.array([[finer.rise, finer.set]]), receptors, spells)[0].direct_h
 
     with ThreadPoolExecutor(2) as pool:
         truth = np.array(list(pool.map(day_hours, days)))
-    print(f"accuracy: 2,000 points, mean {truth.sum(axis=0).mean():,.0f} h a year; rays a point, error of the year, of a day")
+    print(
+        f"accuracy: 2,000 points with {truth.sum(axis=0).mean():,.0f} h a year; rays a point, errors of year and day"
+    )
     for coarse, levels, step in ((12, 2, 1200.0), (16, 2, 600.0), (24, 2, 600.0), (24, 2, 450.0), (48, 2, 300.0)):
         question = YearQuestion(SITE.latitude, SITE.north_deg, coarse, levels, step)
         counting = Counting(caster)
-        stored = question.answer(counting, receptors, lambda: None)  # type: ignore[arg-type]
+        stored = question.answer(counting, receptors, lambda: None)
         found = hours_by_year(YearWeights(question, intervals, track), receptors, stored)
         chosen = range(3, len(days), 8)
         by_day = np.array([
@@ -216,34 +220,35 @@ def accuracy(folder: Path) -> None:
         step_intervals = intervals_of(stepped, SITE, track)
         steps = StepsQuestion(step_intervals.middle, track)
         counting = Counting(caster)
-        packed = steps.answer(counting, receptors, lambda: None)["open"]  # type: ignore[arg-type]
+        packed = steps.answer(counting, receptors, lambda: None)["open"]
         found = hours_by_steps(steps, step_intervals, receptors, packed)
         chosen = range(3, len(days), 8)
-        by_day = []
+        each_day = []
         for day in chosen:
             mine = step_intervals.day == step_intervals.resolved_days[day].toordinal()
             single = StepsQuestion(steps.instants[mine], track)
-            by_day.append(hours_by_steps(single, _one_day(step_intervals, day), receptors, packed[mine]).direct_h)
+            each_day.append(hours_by_steps(single, _one_day(step_intervals, day), receptors, packed[mine]).direct_h)
         _print_error(f"steps of {step_min} min", counting.rays / len(receptors), found, truth,
-                     np.array(by_day) - truth[list(chosen)])  # fmt: skip
+                     np.array(each_day) - truth[list(chosen)])  # fmt: skip
 
 
-def _one_day(intervals: object, day: int) -> object:
-    ordinal = intervals.resolved_days[day].toordinal()  # type: ignore[attr-defined]
-    mine = intervals.day == ordinal  # type: ignore[attr-defined]
+def _one_day(intervals: Any, day: int) -> Any:
+    ordinal = intervals.resolved_days[day].toordinal()
+    mine = intervals.day == ordinal
     return replace(
-        intervals, start=intervals.start[mine], end=intervals.end[mine], day=intervals.day[mine],  # type: ignore[type-var, attr-defined]
-        resolved_days=(intervals.resolved_days[day],),  # type: ignore[attr-defined]
+        intervals, start=intervals.start[mine], end=intervals.end[mine], day=intervals.day[mine],
+        resolved_days=(intervals.resolved_days[day],),
     )  # fmt: skip
 
 
-def _print_error(name: str, rays: float, found: object, truth: np.ndarray, of_days: np.ndarray) -> None:
-    off = np.abs(found.direct_h - truth.sum(axis=0))  # type: ignore[attr-defined]
-    stated = found.error_h  # type: ignore[attr-defined]
+def _print_error(name: str, rays: float, found: Any, truth: np.ndarray, of_days: np.ndarray) -> None:
+    off = np.abs(found.direct_h - truth.sum(axis=0))
+    stated = found.error_h
     day = np.abs(of_days) * 60
     print(
         f"  {name:24} {rays:7,.0f} rays   mean {off.mean():6.2f} h  worst {off.max():6.1f} h   day p99 "
-        f"{np.percentile(day, 99):5.1f} min   stated: median {np.median(stated):6.2f} h, holds for {np.mean(off <= stated):.1%}"
+        f"{np.percentile(day, 99):5.1f} min   stated: median {np.median(stated):6.2f} h, "
+        f"holds for {np.mean(off <= stated):.1%}"
     )
 
 
@@ -255,17 +260,19 @@ def again(folder: Path) -> None:
     first, results = timed(lambda: run(study, out=target))
     autumn = replace(YEAR, name="autumn", days="09-01/11-30", start="09:00", end="15:00")
     second, other = timed(lambda: run(replace(study, periods=(autumn,)), out=target))
-    asked = results.seconds["casting"] + results.seconds["measuring"]  # type: ignore[attr-defined]
-    derived = other.seconds["casting"] + other.seconds["measuring"]  # type: ignore[attr-defined]
-    print(f"again: {len(results.faces):,} faces")  # type: ignore[attr-defined]
+    asked = results.seconds["casting"] + results.seconds["measuring"]
+    derived = other.seconds["casting"] + other.seconds["measuring"]
+    print(f"again: {len(results.faces):,} faces")
     print(f"  another period's hours from stored answers: {asked / derived:6.0f} × faster than asking  (bar 100)")
     print(f"  the whole second command:                   {first / second:6.1f} × faster than the first")
-    chunks = list(chunks_of(len(results.faces), chunk_size(len(results.faces))))  # type: ignore[attr-defined]
+    chunks = list(chunks_of(len(results.faces), chunk_size(len(results.faces))))
     lost = max(len(chunks) // 10, 1) + 1  # a tenth was not begun, and two threads were in the middle of one each
     for path in sorted((target / "mask").glob("year-*/*.npz"))[-lost:]:
         path.unlink()
     resumed, _ = timed(lambda: run(study, out=target))
-    print(f"  resumed at nine tenths ({lost} of {len(chunks)} chunks missing):   {resumed / first:5.2f} of a whole run  (bar 0.2)")
+    print(
+        f"  resumed at nine tenths ({lost} of {len(chunks)} chunks missing): {resumed / first:5.2f} of a whole  (bar 0.2)"
+    )
 
 
 def scaling(folder: Path) -> None:
@@ -277,7 +284,7 @@ def scaling(folder: Path) -> None:
     base = None
     for count in (2000, 8000, 32000):
         some = on_facades(prepared, count)
-        seconds, _ = timed(lambda some=some: answer_all([question], some.caster, some.receptors, MemoryStore()))  # type: ignore[misc]
+        seconds, _ = timed(partial(answer_all, [question], some.caster, some.receptors, MemoryStore()))
         base = base or seconds
         print(f"  {count:7,} points       {seconds / base:6.2f} ×")
     base = None
@@ -285,7 +292,7 @@ def scaling(folder: Path) -> None:
         mesh = read_obj(dense_grid(folder, blocks))
         caster = build(mesh.vertices, mesh.triangles)
         some = on_facades(prepared, 8000)
-        seconds, _ = timed(lambda caster=caster, some=some: answer_all([question], caster, some.receptors, MemoryStore()))  # type: ignore[misc]
+        seconds, _ = timed(partial(answer_all, [question], caster, some.receptors, MemoryStore()))
         base = base or seconds
         print(f"  {len(mesh.triangles):7,} triangles    {seconds / base:6.2f} ×")
 

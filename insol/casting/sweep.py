@@ -126,7 +126,11 @@ def _depth_forms(seen: NDArray[np.float64], twice: NDArray[np.float64]) -> NDArr
 
 
 def _test_cells(
-    flat: Flat, points: NDArray[np.float64], low: NDArray[np.float64], high: NDArray[np.float64], blocked: NDArray[np.bool_]
+    flat: Flat,
+    points: NDArray[np.float64],
+    low: NDArray[np.float64],
+    high: NDArray[np.float64],
+    blocked: NDArray[np.bool_],
 ) -> None:
     """Test every point against the triangles of its cell; fills `blocked`.
 

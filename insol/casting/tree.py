@@ -77,7 +77,8 @@ def _candidates(
 ) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
     """Pairs of a ray and a triangle in a leaf whose box the ray passes."""
     inverse = 1.0 / np.where(directions == 0, NO_ADVANCE, directions)
-    ray, node = np.arange(len(origins)), np.zeros(len(origins), dtype=np.int64)
+    ray: NDArray[np.int64] = np.arange(len(origins))
+    node: NDArray[np.int64] = np.zeros(len(origins), dtype=np.int64)
     for level, (low, high) in enumerate(zip(tree.low, tree.high, strict=True)):
         if level:
             ray, node = np.repeat(ray, 2), (node[:, None] * 2 + [0, 1]).ravel()

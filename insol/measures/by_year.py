@@ -141,7 +141,7 @@ def hours_by_year(weights: YearWeights, receptors: Receptors, answer: dict[str, 
         return _in_halves(weights, receptors, answer)
     tables = np.stack([weights.of(normal) for normal in receptors.normals])
     possible = tables[:, :, -1]
-    spells = _on_used_rows(answer, possible.any(axis=0))
+    spells = _on_used_rows(answer, np.asarray(possible.any(axis=0)))
     place = spells.row * np.int32(CELLS + 1) + (receptors.orientation * np.int32(tables[0].size))[spells.receptor]
     sums = tables.ravel()
     at_begin, at_end = (_read_off(sums, place, at) for at in (spells.begin, spells.end))

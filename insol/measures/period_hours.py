@@ -27,9 +27,7 @@ Chunk = tuple[int, int, Receptors]
 """Number, first receptor, receptors."""
 
 
-def hours_of(
-    plan: PeriodPlan, receptors: Receptors, store: Store, track: SunTrack
-) -> tuple[SunHours, Spells | None]:
+def hours_of(plan: PeriodPlan, receptors: Receptors, store: Store, track: SunTrack) -> tuple[SunHours, Spells | None]:
     """The hours of every receptor in a period; its spells of sun where the edges are known.
 
     The store holds the answers of the plan's questions for every chunk. Nothing is cast.
@@ -59,7 +57,9 @@ def _by_steps(plan: PeriodPlan, chunks: list[Chunk], store: Store) -> SunHours:
     assert isinstance(question, StepsQuestion)
     return joined(
         on_all_cores(
-            lambda chunk: hours_by_steps(question, plan.intervals, chunk[2], store.read(question.name, chunk[0])["open"]),
+            lambda chunk: hours_by_steps(
+                question, plan.intervals, chunk[2], store.read(question.name, chunk[0])["open"]
+            ),
             chunks,
         )
     )
@@ -68,7 +68,9 @@ def _by_steps(plan: PeriodPlan, chunks: list[Chunk], store: Store) -> SunHours:
 def _by_days(plan: PeriodPlan, chunks: list[Chunk], store: Store) -> tuple[SunHours, Spells]:
     pieces = on_all_cores(lambda chunk: _days_of_chunk(plan, chunk[2], store, chunk[0]), chunks)
     spells = Spells(
-        receptor=np.concatenate([found.receptor + first for (_, found), (_, first, _) in zip(pieces, chunks, strict=True)]),
+        receptor=np.concatenate(
+            [found.receptor + first for (_, found), (_, first, _) in zip(pieces, chunks, strict=True)]
+        ),
         begin=np.concatenate([found.begin for _, found in pieces]),
         end=np.concatenate([found.end for _, found in pieces]),
     )

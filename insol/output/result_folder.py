@@ -1,7 +1,7 @@
 """The result folder: written aside, renamed when whole, one writer at a time.
 
-    DIR.unfinished/   grows while a run goes on; a stopped run goes on from there
-    DIR/              a whole result; replaced by the next whole one, never half overwritten
+DIR.unfinished/   grows while a run goes on; a stopped run goes on from there
+DIR/              a whole result; replaced by the next whole one, never half overwritten
 """
 
 from __future__ import annotations

@@ -91,7 +91,13 @@ def parts_table(
 
 
 def spells_table(
-    scene: Scene, faces: Faces, period: str, spells: Spells, begin: Sequence[str], end: Sequence[str], date: Sequence[str]
+    scene: Scene,
+    faces: Faces,
+    period: str,
+    spells: Spells,
+    begin: Sequence[str],
+    end: Sequence[str],
+    date: Sequence[str],
 ) -> pd.DataFrame:
     """One row a spell of sun of a one-day period; `begin`, `end` and `date` are read off the period's clock."""
     import pandas as pd

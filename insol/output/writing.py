@@ -74,8 +74,7 @@ def result_content(results: Results) -> dict[str, object]:
         "conventions": {
             "frame": "the model's own x and y, z up, metres",
             "local_origin_m": scene.origin.tolist(),
-            "sun": "centre of the disc; up when above the astronomical horizon; no refraction; "
-            "NREL SPA through pvlib",
+            "sun": "centre of the disc; up when above the astronomical horizon; no refraction; NREL SPA through pvlib",
             "stand_off_m": stand_off(scene.extent_m, STAND_OFF_M),
             "shaded_fraction": "1 - direct / possible",
         },
@@ -101,7 +100,9 @@ def result_content(results: Results) -> dict[str, object]:
 def inputs(results: Results) -> list[dict[str, object]]:
     """Every file that was read, with its fingerprint."""
     study = results.study
-    files = [(model.file, {"units": model.units, "up": model.up, "role": model.role}) for model in study.models]
+    files: list[tuple[Path, dict[str, str]]] = [
+        (model.file, {"units": model.units, "up": model.up, "role": model.role}) for model in study.models
+    ]
     files += [(measure.file, {"kind": "points"}) for measure in study.measures if measure.kind == "points"]
     listed: list[dict[str, object]] = [
         {"file": str(file), "sha256": _sha256(study.path_of(file)), **facts} for file, facts in files

@@ -50,7 +50,8 @@ def welded(mesh: Mesh) -> Mesh:
     order = np.argsort(first, kind="stable")
     rank = np.empty(len(first), dtype=np.int64)
     rank[order] = np.arange(len(first))
-    return replace(mesh, vertices=mesh.vertices[first[order]], triangles=rank[number.reshape(-1)][mesh.triangles])
+    triangles = rank[number.reshape(-1)][mesh.triangles].astype(np.int32)
+    return replace(mesh, vertices=mesh.vertices[first[order]], triangles=triangles)
 
 
 def bodies_of(triangles: NDArray[np.integer]) -> NDArray[np.int64]:

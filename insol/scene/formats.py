@@ -21,7 +21,9 @@ def read_with_trimesh(path: Path) -> Mesh:
         The file cannot be read, holds no faces, or coordinates that are no numbers.
     """
     scene = _loaded(path)
-    vertices, triangles, part, names, materials = [], [], [], [], []
+    vertices, triangles, part = [], [], []
+    names: list[str] = []
+    materials: list[str] = []
     offset = 0
     for node in scene.graph.nodes_geometry:
         transform, geometry_name = scene.graph[node]
@@ -78,4 +80,4 @@ def _joined(
     number = np.array([unique.index(name) for name in names], dtype=np.int32)
     material = tuple(materials[names.index(name)] for name in unique)
     polygon = np.arange(len(triangles), dtype=np.int32)
-    return Mesh(vertices, triangles, polygon, number[part], tuple(unique), material)
+    return Mesh(vertices, triangles.astype(np.int32), polygon, number[part], tuple(unique), material)

@@ -63,7 +63,9 @@ def read_obj(path: Path) -> Mesh:
     corners = _corner_indices(statements, len(vertices), path)
     triangles, polygon = triangulated(vertices, corners, np.array(statements.counts))
     part_of_polygon, names, materials = _parts(statements, path.stem)
-    notes = [f"{path.name}: {', '.join(sorted(statements.ignored))} left out: no surfaces"] if statements.ignored else []
+    notes = (
+        [f"{path.name}: {', '.join(sorted(statements.ignored))} left out: no surfaces"] if statements.ignored else []
+    )
     return Mesh(vertices, triangles, polygon, part_of_polygon[polygon], names, materials, tuple(notes))
 
 
@@ -172,7 +174,9 @@ def _is_index(token: str) -> bool:
 def _bad_corner(statements: Statements, place: int, path: Path, why: str) -> ModelError:
     polygon = int(np.searchsorted(np.cumsum(statements.counts), place, side="right"))
     token = statements.corners[place]
-    return ModelError(f'a face names the vertex "{token[:40]}", which {why}', where=f"{path}:{statements.lines[polygon]}")
+    return ModelError(
+        f'a face names the vertex "{token[:40]}", which {why}', where=f"{path}:{statements.lines[polygon]}"
+    )
 
 
 def _parts(statements: Statements, stem: str) -> tuple[NDArray[np.int32], tuple[str, ...], tuple[str, ...]]:

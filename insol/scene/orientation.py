@@ -147,7 +147,7 @@ def _against_the_first(count: int, edges: Edges, shell: NDArray[np.int64]) -> ND
 def _signed_volumes(corners: NDArray[np.float64], shell: NDArray[np.int64], count: int) -> NDArray[np.float64]:
     """Volume (count,) enclosed by each shell, negative where its normals point inward."""
     volumes = np.einsum("ij,ij->i", corners[:, 0], np.cross(corners[:, 1], corners[:, 2])) / 6.0
-    return np.bincount(shell, volumes, minlength=count)
+    return np.bincount(shell, volumes, minlength=count).astype(np.float64)
 
 
 def _lying(
@@ -182,7 +182,7 @@ def _openness(
         directions = _fan(side * normals[sampled]).reshape(-1, 3).astype(np.float32)
         free = ~caster.blocked_each(origins, directions)
         share = free.reshape(-1, FAN).mean(axis=1)
-        seen.append(np.bincount(shell[sampled], share * areas[sampled], minlength=count))
+        seen.append(np.bincount(shell[sampled], share * areas[sampled], minlength=count).astype(np.float64))
     return seen[0], seen[1]
 
 

@@ -27,7 +27,9 @@ def triangulated(
     for size in np.unique(counts):
         chosen = np.flatnonzero(counts == size)
         rings = corners[starts[chosen][:, None] + np.arange(size)]
-        fan = np.stack([np.stack([rings[:, 0], rings[:, k], rings[:, k + 1]], axis=1) for k in range(1, size - 1)], axis=1)
+        fan = np.stack(
+            [np.stack([rings[:, 0], rings[:, k], rings[:, k + 1]], axis=1) for k in range(1, size - 1)], axis=1
+        )
         concave = np.zeros(len(chosen), dtype=bool) if size == 3 else _repeats(rings) | ~convex(vertices[rings])
         triangles.append(fan[~concave].reshape(-1, 3))
         polygons.append(np.repeat(chosen[~concave], size - 2))
@@ -82,8 +84,8 @@ def _ears(ring: NDArray[np.float64]) -> NDArray[np.int64]:
     normal = newell_normals(local[None])[0]
     axis = int(np.abs(normal).argmax())
     flat = np.delete(local, axis, axis=1)
-    ears = mapbox_earcut.triangulate_float64(flat, np.array([len(ring)], dtype=np.uint32)).reshape(-1, 3)
-    ears = ears.astype(np.int64)
+    found = mapbox_earcut.triangulate_float64(flat, np.array([len(ring)], dtype=np.uint32))
+    ears: NDArray[np.int64] = found.reshape(-1, 3).astype(np.int64)
     corners = local[ears]
     facing = np.cross(corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0]) @ normal
     ears[facing < 0] = ears[facing < 0][:, ::-1]

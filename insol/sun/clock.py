@@ -129,4 +129,3 @@ def clock_lead_s(unix: NDArray[np.float64], clock: Clock, site: Site, track: Sun
 def solar_time_h(unix: NDArray[np.float64], track: SunTrack) -> NDArray[np.float64]:
     """True solar time [h], 12 at upper transit."""
     return track.hour_angle(unix) / 15.0 + 12.0
-

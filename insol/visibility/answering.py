@@ -107,9 +107,7 @@ def answer_all(
     return Tally(asked=len(missing), found=len(wanted) - len(missing))
 
 
-def _collect(
-    futures: Sequence[Future[float]], total: float, progress: Callable[[float, float], None] | None
-) -> None:
+def _collect(futures: Sequence[Future[float]], total: float, progress: Callable[[float, float], None] | None) -> None:
     """Wait for all work, telling how far it is, and raise the first failure at once."""
     waiting, done = set(futures), 0.0
     while waiting:

@@ -39,9 +39,7 @@ class Identity:
     def differences(self, other: Identity) -> list[str]:
         """What is different about another one, in plain words."""
         return [
-            PLAIN_WORDS[field.name]
-            for field in fields(self)
-            if getattr(self, field.name) != getattr(other, field.name)
+            PLAIN_WORDS[field.name] for field in fields(self) if getattr(self, field.name) != getattr(other, field.name)
         ]
 
 

@@ -84,7 +84,7 @@ def receptors_of(faces: Faces, *, extent_m: float, stand_off_m: float) -> Recept
     order = coherent_order(points, orientation)
     return Receptors(
         face=measured[order],
-        origins=points[order],
-        orientation=orientation[order],
+        origins=points[order].astype(np.float32),
+        orientation=orientation[order].astype(np.int32),
         normals=normals[kept],
     )

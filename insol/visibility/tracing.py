@@ -119,10 +119,7 @@ def trace(
     width_s : an edge is known when its bracket is no wider than this
     guess : where nothing needs to be asked, if anywhere
     """
-    if guess is None:
-        visits = visits_of(receptors, front_windows(receptors.normals, path, samples))
-    else:
-        visits = guess.visits
+    visits = visits_of(receptors, front_windows(receptors.normals, path, samples)) if guess is None else guess.visits
     directions = path.directions(samples)
     asker = _Asker(caster, receptors, path, check_stop)
     if guess is None:
@@ -304,7 +301,10 @@ def spells_of(traced: Traced) -> tuple[NDArray[np.int64], NDArray[np.float64], N
     opens = traced.open_first[edge_visit] == (nth % 2 == 1)
     open_last = traced.open_first ^ (count % 2 == 1)
     first, last = np.flatnonzero(traced.open_first), np.flatnonzero(open_last)
-    begin_visit, begin = np.concatenate([first, edge_visit[opens]]), np.concatenate([visits.begin[first], edge_at[opens]])
+    begin_visit, begin = (
+        np.concatenate([first, edge_visit[opens]]),
+        np.concatenate([visits.begin[first], edge_at[opens]]),
+    )
     end_visit, end = np.concatenate([edge_visit[~opens], last]), np.concatenate([edge_at[~opens], visits.end[last]])
     # Both halves ascend already, and within a visit the first half comes first.
     opening, closing = np.argsort(begin_visit, kind="stable"), np.argsort(end_visit, kind="stable")

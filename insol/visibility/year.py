@@ -196,9 +196,7 @@ class _Between:
         chosen[rough] = True
         of_rough = chosen[self.visits.receptor]
         number = np.cumsum(chosen) - 1
-        visits = Visits(
-            number[self.visits.receptor[of_rough]], self.visits.begin[of_rough], self.visits.end[of_rough]
-        )
+        visits = Visits(number[self.visits.receptor[of_rough]], self.visits.begin[of_rough], self.visits.end[of_rough])
         return Guess(visits, asked, open_a, ends_asked[of_rough], begin[of_rough], end[of_rough])
 
     def _has_thin(self, traced: Traced) -> NDArray[np.bool_]:
@@ -222,7 +220,7 @@ class _Between:
 def states_at(
     traced: Traced, samples: NDArray[np.float64], chosen: NDArray[np.int64], count: int
 ) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
-    """Whether the sky is open, and whether a visit tells, at each sample for chosen receptors of `count`: (m, r) each."""
+    """Whether the sky is open, and whether a visit tells, at each sample, for chosen receptors: (m, r) each."""
     visits, last = traced.visits, open_last(traced)
     number = np.full(count, -1, dtype=np.int64)
     number[chosen] = np.arange(len(chosen))
@@ -259,12 +257,13 @@ def open_last(traced: Traced) -> NDArray[np.bool_]:
 
 
 def _running_on(traced: Traced, count: int) -> tuple[NDArray, NDArray, NDArray]:
-    """Number of spells (n,) and their begins and ends on a row as they are stored, those at the ends of visits run on."""
+    """Number of spells (n,), their begins and ends on a row as they are stored; those at a visit's end run on."""
     widened = Traced(_territories(traced.visits), traced.open_first, traced.edge_visit, traced.edge_at)
     receptor, begin, end = spells_of(widened)
     # Two samples hold one edge between them at most: from a step of 200 s on, fewer than 256 spells.
     number = np.bincount(receptor, minlength=count).astype(np.uint8)
-    return number, *(np.round((at + HALF_TURN_S) / PLACE_S).astype(np.uint16) for at in (begin, end))
+    first, last = (np.round((at + HALF_TURN_S) / PLACE_S).astype(np.uint16) for at in (begin, end))
+    return number, first, last
 
 
 def _territories(visits: Visits) -> Visits:

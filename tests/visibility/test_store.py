@@ -52,7 +52,7 @@ def test_a_damaged_chunk_is_said_in_one_line(tmp_path: Path) -> None:
     store = FolderStore(tmp_path)
     store.write("day-a", 0, arrays())
     (tmp_path / "day-a" / "0000.npz").write_bytes(b"not a zip file at all")
-    with pytest.raises(ResultError, match="cannot be read.*delete this file and run again"):
+    with pytest.raises(ResultError, match=r"cannot be read.*delete this file and run again"):
         store.read("day-a", 0)
 
 

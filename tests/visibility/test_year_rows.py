@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from itertools import pairwise
 from pathlib import Path
 
 import numpy as np
@@ -97,7 +98,7 @@ def test_any_chunk_of_receptors_has_the_same_answer(town: SmallTown) -> None:
     cuts = [0, 7, 40, len(town.receptors)]
     pieces = [
         question.answer(town.prepared.caster, town.receptors.piece(first, last), nothing)
-        for first, last in zip(cuts[:-1], cuts[1:], strict=True)
+        for first, last in pairwise(cuts)
     ]
     np.testing.assert_array_equal(np.concatenate([piece["count"] for piece in pieces], axis=1), whole["count"])
     owner = np.tile(np.arange(len(town.receptors)), len(whole["count"])).repeat(whole["count"].ravel())
