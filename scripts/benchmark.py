@@ -200,9 +200,7 @@ def accuracy(folder: Path) -> None:
 
     with ThreadPoolExecutor(2) as pool:
         truth = np.array(list(pool.map(day_hours, days)))
-    print(
-        f"accuracy: 2,000 points with {truth.sum(axis=0).mean():,.0f} h a year; rays a point, errors of year and day"
-    )
+    print(f"accuracy: 2,000 points with {truth.sum(axis=0).mean():,.0f} h a year; rays a point, errors of year and day")
     for coarse, levels, step in ((12, 2, 1200.0), (16, 2, 600.0), (24, 2, 600.0), (24, 2, 450.0), (48, 2, 300.0)):
         question = YearQuestion(SITE.latitude, SITE.north_deg, coarse, levels, step)
         counting = Counting(caster)
@@ -271,7 +269,7 @@ def again(folder: Path) -> None:
         path.unlink()
     resumed, _ = timed(lambda: run(study, out=target))
     print(
-        f"  resumed at nine tenths ({lost} of {len(chunks)} chunks missing): {resumed / first:5.2f} of a whole  (bar 0.2)"
+        f"  resumed at nine tenths ({lost} of {len(chunks)} chunks gone): {resumed / first:5.2f} of a whole  (bar 0.2)"
     )
 
 

@@ -28,6 +28,15 @@ PLACES_A_CELL = int(CELL_S / PLACE_S)
 MOST_TABLES = 32
 """Orientations whose weights are held beside each other for one chunk: a megabyte each."""
 
+GATHER_S = 120.0
+"""Width within which pieces are gathered [s of hour angle]."""
+
+GATHERED_SHARE = 0.002
+"""What gathering may put wrong, of the possible sun: the largest seen on a terrain's 12,000 orientations."""
+
+MANY_ORIENTATIONS = 100
+"""From so many orientations on, as on domes and terrains, a period's pieces are gathered."""
+
 MOST_KEPT = 64
 """Orientations whose weights are kept at a time: half a megabyte each."""
 
@@ -75,13 +84,38 @@ def minutes_of(intervals: Intervals, track: SunTrack, declinations: NDArray[np.f
     return Minutes(seconds, track.directions(middle), track.hour_angle(middle), row, np.clip(share, 0.0, 1.0))
 
 
-class YearWeights:
-    """Weights of a period on the cells of the rows, for one orientation after another."""
+def gathered(minutes: Minutes) -> Minutes:
+    """The pieces of all days that lie between the same rows within GATHER_S of hour angle, taken as one.
 
-    def __init__(self, question: YearQuestion, intervals: Intervals, track: SunTrack) -> None:
+    A tenth as many. Facing is then told at their middle: to some minutes at the edge of each one's
+    visit, as often too early as too late.
+    """
+    cell = ((minutes.hour_angle * SECONDS_PER_DEGREE + HALF_TURN_S) / GATHER_S).astype(np.int64)
+    _, group = np.unique(minutes.row * (2 * HALF_TURN_S / GATHER_S) + cell, return_inverse=True)
+    seconds = np.bincount(group, minutes.seconds)
+
+    def mean(values: NDArray[np.float64]) -> NDArray[np.float64]:
+        return np.bincount(group, values * minutes.seconds) / seconds
+
+    direction = np.stack([mean(minutes.direction[:, axis]) for axis in range(3)], axis=1)
+    direction /= np.linalg.norm(direction, axis=1, keepdims=True)
+    return Minutes(
+        seconds, direction, mean(minutes.hour_angle), np.round(mean(minutes.row)).astype(np.int64), mean(minutes.share)
+    )
+
+
+class YearWeights:
+    """Weights of a period on the cells of the rows, for one orientation after another.
+
+    With `many` orientations the period's pieces are gathered first.
+    """
+
+    def __init__(self, question: YearQuestion, intervals: Intervals, track: SunTrack, *, many: bool = False) -> None:
         self.question = question
         self.declinations = np.array([row.declination for row in question.rows()])
-        self.minutes = minutes_of(intervals, track, self.declinations)
+        minutes = minutes_of(intervals, track, self.declinations)
+        self.gathered = many and len(minutes.seconds) > 0
+        self.minutes = gathered(minutes) if self.gathered else minutes
         self.days = self._days_of_rows()
         self._rows_directions = [self._directions_on(self.minutes.row + above) for above in (0, 1)]
         self._kept: dict[bytes, NDArray[np.float64]] = {}
@@ -152,7 +186,8 @@ def hours_by_year(weights: YearWeights, receptors: Receptors, answer: dict[str, 
     direct = np.clip(np.bincount(spells.receptor, sun_s, minlength=len(receptors)) + missed, 0.0, possible_s)
     ends = _ends_error(spells, weights, len(receptors))
     jumps = _jumps(answer["count"], spells, sun_s, possible[receptors.orientation].T)
-    error = np.sqrt(ENDS**2 * ends**2 + MISSED**2 * variance + JUMPS**2 * jumps)
+    edges_of_visits = (GATHERED_SHARE * possible_s) ** 2 if weights.gathered else 0.0
+    error = np.sqrt(ENDS**2 * ends**2 + MISSED**2 * variance + JUMPS**2 * jumps + edges_of_visits)
     return SunHours(direct / 3600, possible_s / 3600, np.minimum(error, possible_s) / 3600)
 
 

@@ -10,7 +10,7 @@ import numpy as np
 
 from insol.measures.by_days import Spells, added, hours_by_day, spans_of
 from insol.measures.by_steps import hours_by_steps
-from insol.measures.by_year import YearWeights, hours_by_year
+from insol.measures.by_year import MANY_ORIENTATIONS, YearWeights, hours_by_year
 from insol.measures.sun_hours import SunHours, joined
 from insol.sun.position import SunTrack
 from insol.visibility.answering import chunk_size, chunks_of, usable_cores
@@ -46,7 +46,8 @@ def hours_of(plan: PeriodPlan, receptors: Receptors, store: Store, track: SunTra
 def _by_rows(plan: PeriodPlan, chunks: list[Chunk], store: Store, track: SunTrack) -> SunHours:
     (question,) = plan.questions
     assert isinstance(question, YearQuestion)
-    weights = YearWeights(question, plan.intervals, track)
+    orientations = len(np.unique(np.concatenate([piece.normals for _, _, piece in chunks]), axis=0))
+    weights = YearWeights(question, plan.intervals, track, many=orientations > MANY_ORIENTATIONS)
     return joined(
         on_all_cores(lambda chunk: hours_by_year(weights, chunk[2], store.read(question.name, chunk[0])), chunks)
     )

@@ -199,6 +199,6 @@ def test_the_order_keeps_groups_together_and_loses_nobody() -> None:
 
 def test_embree_asked_for_where_it_is_not(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr("insol.casting.engines.has_embree", lambda: False)
-    with pytest.raises(MissingPackage, match="embree is not installed. pip install embreex, or --engine numpy"):
+    with pytest.raises(MissingPackage, match=r"embree is not installed. pip install embreex, or --engine numpy"):
         build(np.empty((0, 3)), np.empty((0, 3), dtype=np.int32), "embree")
     assert build(np.empty((0, 3)), np.empty((0, 3), dtype=np.int32), "auto").engine == "numpy"

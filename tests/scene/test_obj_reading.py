@@ -119,12 +119,12 @@ def test_what_cannot_be_read_is_said_in_one_line(tmp_path: Path, text: str, said
 
 def test_missing_files_folders_and_unknown_endings(tmp_path: Path) -> None:
     (tmp_path / "block.obj").write_text(SQUARE + "f 1 2 3 4\n")
-    with pytest.raises(ModelError, match='there is no such file. did you mean "block.obj"?'):
+    with pytest.raises(ModelError, match=r'there is no such file. did you mean "block.obj"?'):
         read_mesh(tmp_path / "blok.obj")
     with pytest.raises(ModelError, match="this is a folder, not a mesh file"):
         read_mesh(tmp_path)
     (tmp_path / "model.doc").write_text("x")
-    with pytest.raises(ModelError, match='".doc" files are not read; allowed: ".obj"'):
+    with pytest.raises(ModelError, match=r'".doc" files are not read; allowed: ".obj"'):
         read_mesh(tmp_path / "model.doc")
 
 

@@ -11,7 +11,7 @@ import pytest
 from small_towns import SmallTown, small_town
 
 from insol.measures.by_days import Spells, hours_by_day
-from insol.measures.by_year import YearWeights, hours_by_year
+from insol.measures.by_year import GATHERED_SHARE, YearWeights, hours_by_year
 from insol.measures.sun_hours import SunHours
 from insol.study.description import Period
 from insol.sun.times import Intervals, intervals_of
@@ -117,6 +117,16 @@ def test_many_orientations_are_weighed_alike(town: SmallTown, monkeypatch: pytes
     apart = hours_by_year(weights, town.receptors, answer)
     np.testing.assert_allclose(apart.direct_h, together.direct_h, rtol=0, atol=1e-9)
     np.testing.assert_allclose(apart.possible_h, together.possible_h, rtol=0, atol=1e-9)
+
+
+def test_gathered_pieces_stay_within_what_is_stated_for_them(town: SmallTown) -> None:
+    question = year_question(town)
+    answer = question.answer(town.prepared.caster, town.receptors, nothing)
+    intervals, track = town.prepared.plans[0].intervals, town.prepared.track
+    exact = hours_by_year(YearWeights(question, intervals, track), town.receptors, answer)
+    found = hours_by_year(YearWeights(question, intervals, track, many=True), town.receptors, answer)
+    assert (np.abs(found.possible_h - exact.possible_h) <= GATHERED_SHARE * exact.possible_h + 0.5).all()
+    assert (np.abs(found.direct_h - exact.direct_h) <= found.error_h).all()
 
 
 def test_periods_of_the_year_add_up_to_it(town: SmallTown) -> None:
