@@ -13,7 +13,7 @@ import numpy as np
 from insol.casting.contract import Caster
 from insol.casting.engines import EngineChoice, build
 from insol.conventions import STAND_OFF_M
-from insol.errors import PeriodError
+from insol.errors import MeasureError, PeriodError
 from insol.faces.make import make_faces
 from insol.faces.model import Faces
 from insol.measures.by_days import Spells
@@ -97,10 +97,21 @@ def prepare(
         plans = tuple(_plan(period, study, track) for period in study.periods)
     with clock.stage("faces"):
         caster = build(scene.vertices, scene.triangles, engine)
-        faces = make_faces(scene, study, caster)
+        faces = _faces(scene, study, caster)
         extent = max(scene.extent_m, float(np.abs(faces.points).max(initial=0.0)))
         receptors = receptors_of(faces, extent_m=extent, stand_off_m=STAND_OFF_M)
     return Prepared(study, scene, health, caster, faces, receptors, track, plans)
+
+
+def _faces(scene: Scene, study: Study, caster: Caster) -> Faces:
+    try:
+        return make_faces(scene, study, caster)
+    except MeasureError as refused:
+        raise MeasureError(refused.what, where=_in_study(study, refused.where), hint=refused.hint) from None
+
+
+def _in_study(study: Study, where: str) -> str:
+    return f"{study.file.name}: {where}" if study.file is not None and where.startswith("measure ") else where
 
 
 def _plan(period: Period, study: Study, track: SunTrack) -> PeriodPlan:

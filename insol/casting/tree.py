@@ -81,7 +81,7 @@ def _candidates(
     node: NDArray[np.int64] = np.zeros(len(origins), dtype=np.int64)
     for level, (low, high) in enumerate(zip(tree.low, tree.high, strict=True)):
         if level:
-            ray, node = np.repeat(ray, 2), (node[:, None] * 2 + [0, 1]).ravel()
+            ray, node = np.repeat(ray, 2), (node[:, None] * 2 + np.array([0, 1])).ravel()
         passed = _passes(low[node], high[node], origins[ray], inverse[ray])
         ray, node = ray[passed], node[passed]
     triangle = tree.order[node[:, None] * LEAF + np.arange(LEAF)]

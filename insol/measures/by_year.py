@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -92,16 +93,15 @@ def gathered(minutes: Minutes) -> Minutes:
     """
     cell = ((minutes.hour_angle * SECONDS_PER_DEGREE + HALF_TURN_S) / GATHER_S).astype(np.int64)
     _, group = np.unique(minutes.row * (2 * HALF_TURN_S / GATHER_S) + cell, return_inverse=True)
-    seconds = np.bincount(group, minutes.seconds)
+    seconds: NDArray[np.float64] = np.bincount(group, minutes.seconds).astype(np.float64)
 
-    def mean(values: NDArray[np.float64]) -> NDArray[np.float64]:
-        return np.bincount(group, values * minutes.seconds) / seconds
+    def mean(values: NDArray[Any]) -> NDArray[np.float64]:
+        return np.asarray(np.bincount(group, values * minutes.seconds) / seconds, dtype=np.float64)
 
     direction = np.stack([mean(minutes.direction[:, axis]) for axis in range(3)], axis=1)
     direction /= np.linalg.norm(direction, axis=1, keepdims=True)
-    return Minutes(
-        seconds, direction, mean(minutes.hour_angle), np.round(mean(minutes.row)).astype(np.int64), mean(minutes.share)
-    )
+    row = np.asarray(np.round(mean(minutes.row)), dtype=np.int64)
+    return Minutes(seconds, direction, mean(minutes.hour_angle), row, mean(minutes.share))
 
 
 class YearWeights:

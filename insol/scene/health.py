@@ -128,7 +128,7 @@ def scene_doubts(
         if height > PLAUSIBLE_HEIGHT_M[1] or max(width, depth) > PLAUSIBLE_WIDTH_M[1]:
             doubts.append(f'{name} measures {size} with units = "{unit}": is it in {other}?')
         elif max(width, depth) < PLAUSIBLE_WIDTH_M[0] and height < PLAUSIBLE_HEIGHT_M[0]:
-            doubts.append(f'{name} measures only {size} with units = "{unit}": is it in {other}?')
+            doubts.append(f'{name} measures only {size} with units = "{unit}": are the units right?')
         if height > 3 * max(width, depth) and height > 30 and min(width, depth) < height / 10:
             doubts.append(f"{name} is {height:,.0f} m high and {min(width, depth):,.1f} m thin: is y up in it?")
     gaps = np.maximum(lows[:, None] - highs[None], lows[None] - highs[:, None])[..., :2].max(axis=2)
