@@ -124,8 +124,3 @@ def clock_lead_s(unix: NDArray[np.float64], clock: Clock, site: Site, track: Sun
     # Zones change their offset at whole minutes.
     minutes, number = np.unique(np.floor(unix / 60.0), return_inverse=True)
     return np.array([offset_s(zone, minute * 60.0) for minute in minutes])[number.reshape(-1)]
-
-
-def solar_time_h(unix: NDArray[np.float64], track: SunTrack) -> NDArray[np.float64]:
-    """True solar time [h], 12 at upper transit."""
-    return track.hour_angle(unix) / 15.0 + 12.0
