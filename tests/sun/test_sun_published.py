@@ -8,8 +8,9 @@ import numpy as np
 import pytest
 from references import sun_values as published
 
+from insol.conventions import normals_from
 from insol.study.description import Period, Site
-from insol.sun.position import sun_track
+from insol.sun.position import direction_from, sun_track
 from insol.sun.seasons import instant_of_longitude
 from insol.sun.times import altitude_crossings, intervals_of, span_of
 
@@ -75,3 +76,40 @@ def test_length_of_the_day_and_noon_altitude(
         )  # printed to two digits, of another year
     noon = intervals.start[0] + np.arange(0, 86400, 30.0)
     assert track.altitude(noon).max() == pytest.approx(noon_deg, abs=0.06)
+
+
+def incidence_deg(direction: np.ndarray, azimuth: float, tilt: float) -> float:
+    normal = normals_from(np.array([azimuth]), np.array([tilt]), 0.0)[0]
+    return float(np.degrees(np.arccos(normal @ direction)))
+
+
+def test_incidence_of_the_worked_example() -> None:
+    """NREL/TP-560-34302, the same example: a slope of 30 degrees that faces 10 degrees east of south. Seen."""
+    example = published.SPA_EXAMPLE
+    place = site(example["latitude"], example["longitude"], elevation_m=example["elevation_m"])
+    track = sun_track(place, example["unix"] - 86400, example["unix"] + 86400)
+    # With refraction there, 25.18700; it lifts the sun by 0.0163 degrees nearly in the plane of incidence.
+    direction = track.directions(np.array([example["unix"]]))[0]
+    assert incidence_deg(direction, 170.0, 30.0) == pytest.approx(25.18700 + 0.0163 * 0.88, abs=0.004)
+
+
+def test_incidence_in_the_handbook() -> None:
+    """Duffie and Beckman, Solar Engineering of Thermal Processes, example 1.6.1: cos θ 0.817, θ 35 degrees. Seen."""
+    direction = direction_from(-14.0, -22.5, 43.0, 0.0)
+    # Madison, 13 February 10:30 solar, slope 45, surface azimuth 15 west of south.
+    assert np.cos(np.radians(incidence_deg(direction, 195.0, 45.0))) == pytest.approx(0.817, abs=0.001)
+    assert incidence_deg(direction, 195.0, 45.0) == pytest.approx(35.18, abs=0.02)
+
+
+def test_zenith_and_azimuth_in_the_handbook() -> None:
+    """Duffie and Beckman, example 1.6.3: 43 N, 16 March 16:00 solar, zenith 70.3, azimuth 66.8. From memory."""
+    direction = direction_from(-2.4, 60.0, 43.0, 0.0)
+    assert np.degrees(np.arccos(direction[2])) == pytest.approx(70.3, abs=0.1)
+    assert np.degrees(np.arctan2(direction[0], direction[1])) % 360 == pytest.approx(180 + 66.8, abs=0.1)
+
+
+def test_noon_altitude_of_the_overhang_rule() -> None:
+    """40 N at the June solstice: 73.44 degrees, so 1.5 m are shaded by 0.446 m of overhang. Recomputed with pvlib."""
+    altitude = np.arcsin(direction_from(23.44, 0.0, 40.0, 0.0)[2])
+    assert np.degrees(altitude) == pytest.approx(73.44, abs=0.01)
+    assert 1.5 / np.tan(altitude) == pytest.approx(0.446, abs=0.001)
