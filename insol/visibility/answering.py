@@ -16,7 +16,7 @@ from insol.visibility.asking import CheckStop
 from insol.visibility.receptors import Receptors
 from insol.visibility.store import Store
 
-LARGEST_CHUNK, SMALLEST_CHUNK, CHUNKS = 8192, 512, 16
+LARGEST_CHUNK, SMALLEST_CHUNK, CHUNKS = 8192, 2048, 16
 """Receptors of a chunk: casts long enough to hide what Python costs, memory of some tens of MB a
 thread; and chunks enough to keep every core at work to the end."""
 
