@@ -77,7 +77,7 @@ def run(
     clock = StageClock(progress)
     if out is None:
         return _answered(prepare(study, engine=engine, repair=repair, clock=clock), MemoryStore(), threads, clock, ())
-    target = Path(out).absolute()
+    target = Path(out).resolve()  # through links: what they point to is replaced, not they
     result_folder.check_target(target)
     prepared = prepare(study, engine=engine, repair=repair, clock=clock)
     with result_folder.only_writer(target):

@@ -1,6 +1,8 @@
 """The result folder: written aside, renamed when whole, one writer at a time.
 
 DIR.unfinished/   grows while a run goes on; a stopped run goes on from there
+DIR.replaced/     the earlier result while the new one takes its place
+DIR.lock          there while a run goes on
 DIR/              a whole result; replaced by the next whole one, never half overwritten
 """
 
@@ -18,6 +20,8 @@ from insol.visibility.store import FolderStore, write_json_aside
 
 MASK = "mask"
 RESULT = "result.json"
+OURS = frozenset({MASK, RESULT, "faces.csv", "parts.csv", "spells.csv", "faces.ply", "context.ply"})
+"""What this program writes into a folder. Nothing else is ever deleted: pictures and notes are people's own."""
 
 
 def check_target(target: Path) -> None:
@@ -38,6 +42,21 @@ def check_target(target: Path) -> None:
         raise ResultError("this is a file, not a folder", where=str(target), hint="give another name")
     elif not target.parent.is_dir():
         raise ResultError("the folder that should hold the result does not exist", where=str(target.parent))
+    for aside in (beside(target, ".unfinished"), beside(target, ".replaced")):
+        strangers = _strangers(aside)
+        if strangers and (aside.name.endswith(".unfinished") or target.exists()):
+            raise ResultError(
+                f'"{strangers[0].name}" is not of this program, which needs this folder for itself',
+                where=str(aside),
+                hint="move it away, or give another name for the result",
+            )
+
+
+def _strangers(folder: Path) -> list[Path]:
+    """What lies in a folder and was not written by this program."""
+    if not folder.is_dir():
+        return [folder] if folder.exists() or folder.is_symlink() else []
+    return sorted(path for path in folder.iterdir() if path.name.removesuffix(".writing") not in OURS)
 
 
 def beside(target: Path, ending: str) -> Path:
@@ -59,16 +78,18 @@ def only_writer(target: Path) -> Iterator[None]:
     lock = FileLock(beside(target, ".lock"), timeout=0)
     try:
         with lock:
-            _restore_interrupted_swap(target)
-            yield
+            try:
+                _restore_interrupted_swap(target)
+                yield
+            finally:
+                if os.name == "posix":  # while it is held: no one else's lock can be taken away
+                    beside(target, ".lock").unlink(missing_ok=True)
     except Timeout:
         raise ResultError(
             "another run is writing here", where=str(target), hint="wait for it, or give another folder"
         ) from None
     except PermissionError as denied:
         raise ResultError(f"cannot write: {denied.strerror}", where=str(denied.filename or target)) from denied
-    if not lock.is_locked:
-        beside(target, ".lock").unlink(missing_ok=True)
 
 
 def open_store(target: Path, identity: Identity) -> tuple[FolderStore, str]:
@@ -85,7 +106,7 @@ def open_store(target: Path, identity: Identity) -> tuple[FolderStore, str]:
     if started != identity and unfinished.exists():
         if started is not None:
             note = f"an unfinished run does not serve: {_changes(started, identity)} changed"
-        shutil.rmtree(unfinished)
+        _delete_ours(unfinished)
     elif started == identity:
         note = "going on with an unfinished run"
     if not note and earlier is not None and earlier != identity:
@@ -95,18 +116,36 @@ def open_store(target: Path, identity: Identity) -> tuple[FolderStore, str]:
 
 
 def finish(target: Path) -> None:
-    """Put the finished folder in the target's place, the answers of the earlier one kept where they serve."""
+    """Put the finished folder in the target's place.
+
+    Answers of the earlier one are kept where they serve, and files that are not ours in any case.
+    """
     unfinished, before = beside(target, ".unfinished"), beside(target, ".replaced")
     keep = target.is_dir() and read_identity(target / MASK) == read_identity(unfinished / MASK)
-    if before.exists():
-        shutil.rmtree(before)
+    _delete_ours(before)
     if target.is_dir():
         os.replace(target, before)
     os.replace(unfinished, target)
+    if before.is_dir():
+        for stranger in _strangers(before):
+            os.replace(stranger, target / stranger.name)
     if keep:
         _move_missing_answers(before / MASK, target / MASK)
-    if before.exists():
-        shutil.rmtree(before)
+    _delete_ours(before)
+
+
+def _delete_ours(folder: Path) -> None:
+    """Delete what this program wrote, and the folder once nothing else is in it."""
+    if not folder.is_dir():
+        return
+    strangers = set(_strangers(folder))
+    for path in set(folder.iterdir()) - strangers:
+        if path.is_dir() and not path.is_symlink():
+            shutil.rmtree(path)
+        else:
+            path.unlink()
+    if not strangers:
+        folder.rmdir()
 
 
 def _restore_interrupted_swap(target: Path) -> None:

@@ -13,6 +13,7 @@ spells would hardly shrink, and are stored as they are.
 
 from __future__ import annotations
 
+import io
 import json
 import os
 import zipfile
@@ -90,12 +91,13 @@ class FolderStore:
         path = self._path(self.folder, question, chunk)
         path.parent.mkdir(parents=True, exist_ok=True)
         aside = path.with_suffix(".writing")
-        with zipfile.ZipFile(aside, "w", compresslevel=1) as archive:
+        with zipfile.ZipFile(aside, "w") as archive:
             for name, array in arrays.items():
                 entry = zipfile.ZipInfo(f"{name}.npy", date_time=ZIP_EPOCH)
                 entry.compress_type = zipfile.ZIP_DEFLATED if array.dtype == np.uint8 else zipfile.ZIP_STORED
-                with archive.open(entry, "w", force_zip64=True) as stream:
-                    np.lib.format.write_array(stream, np.ascontiguousarray(array), allow_pickle=False)
+                plain = io.BytesIO()
+                np.lib.format.write_array(plain, np.ascontiguousarray(array), allow_pickle=False)
+                archive.writestr(entry, plain.getbuffer(), compresslevel=1)
         os.replace(aside, path)
 
     def close_question(self, question: str, facts: Mapping[str, object]) -> None:

@@ -80,3 +80,28 @@ def test_a_folder_of_other_things_is_refused(tmp_path: Path) -> None:
     with pytest.raises(ResultError, match="does not exist"):
         check_target(tmp_path / "nowhere" / "result")
     check_target(tmp_path / "new")
+
+
+def test_files_that_are_not_ours_stay(tmp_path: Path) -> None:
+    """A picture and notes that a person put into the result folder outlive the next run."""
+    target = tmp_path / "result"
+    a_result(target, IDENTITY, "day-a")
+    (target / "notes.txt").write_text("mine")
+    (target / "pictures").mkdir()
+    (target / "pictures" / "view.png").write_text("a picture")
+    a_result(target, OTHER, "day-b")
+    assert (target / "notes.txt").read_text() == "mine"
+    assert (target / "pictures" / "view.png").read_text() == "a picture"
+    assert (target / "result.json").read_text() == "day-b"
+    assert sorted(path.name for path in tmp_path.iterdir()) == ["result"]
+
+
+@pytest.mark.parametrize("ending", [".unfinished", ".replaced"])
+def test_a_folder_beside_that_is_not_ours_is_refused_untouched(tmp_path: Path, ending: str) -> None:
+    target = tmp_path / "result"
+    a_result(target, IDENTITY, "day-a")
+    beside(target, ending).mkdir()
+    (beside(target, ending) / "mine.txt").write_text("mine")
+    with pytest.raises(ResultError, match=r'"mine.txt" is not of this program'):
+        check_target(target)
+    assert (beside(target, ending) / "mine.txt").read_text() == "mine"

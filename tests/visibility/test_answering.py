@@ -182,3 +182,14 @@ def test_a_result_of_nothing_but_covered_faces_is_empty_and_said(tmp_path: Path)
     assert np.isnan(results.periods[0].direct_h).all()
     assert np.isnan(results.periods[1].direct_h).all()
     assert (tmp_path / "result" / "faces.csv").read_text().count("covered") == len(results.faces)
+
+
+@pytest.mark.skipif(sys.platform == "win32", reason="links need rights there")
+def test_a_result_behind_a_link_is_replaced_behind_it(tmp_path: Path) -> None:
+    (tmp_path / "real").mkdir()
+    (tmp_path / "link").symlink_to(tmp_path / "real")
+    for _ in range(2):
+        insol.run(study(tmp_path, DAY, spacing_m=5.0), out=tmp_path / "link")
+    assert (tmp_path / "link").is_symlink()
+    assert (tmp_path / "real" / "result.json").is_file()
+    assert not [*tmp_path.glob("*.lock"), *tmp_path.glob("*.replaced")]
