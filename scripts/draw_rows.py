@@ -39,7 +39,7 @@ def main() -> int:
     number = np.repeat(np.arange(len(rows)), answer["count"][:, 0])
     for row, begin, end in zip(number, answer["begin"], answer["end"], strict=True):
         path = rows[row]
-        visits = front_windows(receptors.normals, path, question.samples(path, shifted=False))
+        visits = front_windows(receptors.normals, path)
         bounds = float(visits.begin.min()), float(visits.end.max())
         first, last = (np.clip(place * PLACE_S - HALF_TURN_S, *bounds) / 240 for place in (begin, end))
         traced = row % (1 << question.levels) == 0

@@ -71,7 +71,7 @@ def hours_by_day(
     whole between two samples: a step is allowed for it, and one step more for each spell seen that
     is shorter than two steps, since where some are that short others may be shorter.
     """
-    windows = front_windows(receptors.normals, question, question.samples())
+    windows = front_windows(receptors.normals, question)
     possible = np.zeros(len(receptors.normals))
     for begin, end in spans:
         inside = np.minimum(windows.end, end) - np.maximum(windows.begin, begin)

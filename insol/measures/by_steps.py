@@ -49,7 +49,10 @@ def hours_by_steps(
             neighbours = (np.diff(columns) == 1) & follows[columns[:-1]]
             edges = _edges_by_slot(mine, neighbours, slots[columns[:-1]])
             error[piece] = lost[orientation] + edge_error(edges, step_s)
-    possible = seconds.sum(axis=1)[receptors.orientation]
+    # What no cast interval stands for is taken to be lit like the rest, and stated whole as error.
+    cast, lost_s = seconds.sum(axis=1)[receptors.orientation], lost[receptors.orientation]
+    direct *= 1.0 + np.divide(lost_s, cast, out=np.zeros(len(cast)), where=cast > 0)
+    possible = cast + lost_s
     return SunHours(direct / 3600, possible / 3600, error / 3600)
 
 

@@ -24,6 +24,11 @@ CELL_S = 60.0
 
 CELLS = int(2 * HALF_TURN_S / CELL_S)
 
+BLOCK_S = 900.0
+"""Width of the blocks of a row in which days are counted [s of hour angle]."""
+
+BLOCKS = int(2 * HALF_TURN_S / BLOCK_S)
+
 PLACES_A_CELL = int(CELL_S / PLACE_S)
 
 MOST_TABLES = 32
@@ -149,12 +154,12 @@ class YearWeights:
         return summed
 
     def _days_of_rows(self) -> NDArray[np.float64]:
-        """How many days of the period each row (rows,) stands for."""
-        minutes, rows = self.minutes, self.question.rows()
-        row = np.concatenate([minutes.row, minutes.row + 1])
+        """How many days of the period each row stands for at each time of day, (rows, BLOCKS)."""
+        minutes, rows = self.minutes, len(self.declinations)
+        block = ((minutes.hour_angle * SECONDS_PER_DEGREE + HALF_TURN_S) / BLOCK_S).astype(np.int64)
+        place = np.concatenate([minutes.row * BLOCKS + block, (minutes.row + 1) * BLOCKS + block])
         seconds = np.concatenate([minutes.seconds * (1 - minutes.share), minutes.seconds * minutes.share])
-        up = np.array([max(row.set - row.rise, CELL_S) for row in rows])
-        return np.bincount(row, seconds, minlength=len(rows)) / up
+        return np.bincount(place, seconds, minlength=rows * BLOCKS).reshape(rows, BLOCKS) / BLOCK_S
 
     def _directions_on(self, row: NDArray[np.int64]) -> NDArray[np.float64]:
         return direction_from(
@@ -188,7 +193,7 @@ def hours_by_year(weights: YearWeights, receptors: Receptors, answer: dict[str, 
     jumps = _jumps(answer["count"], spells, sun_s, possible[receptors.orientation].T)
     edges_of_visits = (GATHERED_SHARE * possible_s) ** 2 if weights.gathered else 0.0
     error = np.sqrt(ENDS**2 * ends**2 + MISSED**2 * variance + JUMPS**2 * jumps + edges_of_visits)
-    return SunHours(direct / 3600, possible_s / 3600, np.minimum(error, possible_s) / 3600)
+    return SunHours(direct / 3600, possible_s / 3600, error / 3600)
 
 
 def _in_halves(weights: YearWeights, receptors: Receptors, answer: dict[str, NDArray]) -> SunHours:
@@ -268,8 +273,12 @@ def _missed(
 
 
 def _ends_error(spells: RowSpells, weights: YearWeights, count: int) -> NDArray[np.float64]:
-    """A step for each spell and for as many days as its row stands for, added as squares: (n,) [s]."""
-    squares = np.bincount(spells.receptor, weights.days[spells.row] ** 2, minlength=count)
+    """A step for each spell, for as many days as its row stands for where it ends, added as squares: (n,) [s]."""
+    at_begin, at_end = (
+        weights.days[spells.row, np.minimum(at * PLACE_S / BLOCK_S, BLOCKS - 1).astype(np.int32)]
+        for at in (spells.begin, spells.end)
+    )
+    squares = np.bincount(spells.receptor, np.maximum(at_begin, at_end) ** 2, minlength=count)
     return weights.question.step_s * np.sqrt(np.maximum(squares, FEWEST_SPELLS * np.max(weights.days) ** 2))
 
 

@@ -19,7 +19,8 @@ class SunHours:
     direct_h : (n,) float64, hours in which the sun reaches the point
     possible_h : (n,) float64, hours with the sun up, within the period's window and low-sun limit,
         and in front of the face, nothing in the way
-    error_h : (n,) float64, how far `direct_h` may be from its value at an endless number of samples
+    error_h : (n,) float64, how far `direct_h` may be from its value at an endless number of samples;
+        never more than is possible
     """
 
     direct_h: NDArray[np.float64]
@@ -29,6 +30,8 @@ class SunHours:
     def __post_init__(self) -> None:
         for name in ("direct_h", "possible_h", "error_h"):
             object.__setattr__(self, name, read_only(getattr(self, name), np.float64, (None,), name))
+        bounded = read_only(np.minimum(self.error_h, self.possible_h), np.float64, (None,), "error_h")
+        object.__setattr__(self, "error_h", bounded)
 
     @property
     def shaded_fraction(self) -> NDArray[np.float64]:

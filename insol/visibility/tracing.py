@@ -22,6 +22,9 @@ from insol.visibility.receptors import Receptors
 INSIDE_S = EDGE_SECONDS / 2
 """How far inside a visit its first and last sample lie [s]: at its very end the ray grazes the face."""
 
+FACING_GRID_S = 120.0
+"""Spacing of the instants between which the sun is looked for as it comes before a surface [s]."""
+
 RAYS_AT_ONCE = 1 << 18
 """Rays of different directions cast together: bounds their memory."""
 
@@ -119,7 +122,7 @@ def trace(
     width_s : an edge is known when its bracket is no wider than this
     guess : where nothing needs to be asked, if anywhere
     """
-    visits = visits_of(receptors, front_windows(receptors.normals, path, samples)) if guess is None else guess.visits
+    visits = visits_of(receptors, front_windows(receptors.normals, path)) if guess is None else guess.visits
     directions = path.directions(samples)
     asker = _Asker(caster, receptors, path, check_stop)
     if guess is None:
@@ -178,13 +181,15 @@ class _Asker:
             high[wide] = np.where(same, high[wide], middle)
 
 
-def front_windows(normals: NDArray[np.float64], path: SunPath, samples: NDArray[np.float64]) -> Windows:
+def front_windows(normals: NDArray[np.float64], path: SunPath) -> Windows:
     """When the sun is in front of each orientation (k, 3) along a path, to a hundredth of a second.
 
-    The cosine of incidence is a sine of the hour angle: between samples some minutes apart it
-    changes sign at most once, except where the sun only touches the plane, which lights nothing.
+    Looked for on a grid of its own, whatever the samples. The cosine of incidence is a sine of the
+    hour angle: between instants two minutes apart it changes sign at most once, except where the
+    sun comes before the plane for less than that, and then lights it at a grazing angle only.
     """
-    instants = np.concatenate([[path.rise], samples, [path.set]])
+    inner = samples_between(path.rise, path.set, FACING_GRID_S)
+    instants = np.concatenate([[path.rise], inner, [path.set]])
     front = normals @ path.directions(instants).T > GRAZING
     orientation, gap = np.nonzero(front[:, 1:] != front[:, :-1])
     crossing = _crossings(normals[orientation], path, instants[gap], instants[gap + 1])

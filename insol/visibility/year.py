@@ -131,7 +131,7 @@ class _Between:
         self.question, self.row, self.receptors = question, row, receptors
         self.before, self.after = before, after
         self.samples = question.samples(row, shifted=shifted)
-        self.visits = visits_of(receptors, front_windows(receptors.normals, row, self.samples))
+        self.visits = visits_of(receptors, front_windows(receptors.normals, row))
         self.share = (row.declination - lower.declination) / (upper.declination - lower.declination)
 
     def traced(self, caster: Caster, check_stop: CheckStop) -> Traced:
